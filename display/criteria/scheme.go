@@ -1,7 +1,5 @@
 package criteria
 
-import "time"
-
 // Quantity is something that a scheme limits and that readings can answer.
 type Quantity string
 
@@ -114,6 +112,3 @@ type SiteID struct {
 	File   string `json:"file"`
 	SHA256 string `json:"sha256"`
 }
-
-// dateForm is how dates stand in records: the day, no time.
-const dateForm = time.DateOnly

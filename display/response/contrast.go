@@ -143,6 +143,8 @@ func (r *Response) budget() errorBudget {
 		offset[i] = float64(r.Noise.Offset)
 		if !r.inside[i] {
 			ambient[i] = lambSpread
+		} else {
+			ambient[i] = -r.taken
 		}
 	}
 	for _, source := range [][]float64{gain, offset, ambient} {

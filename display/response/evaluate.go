@@ -36,6 +36,7 @@ type Response struct {
 	inside []bool // per point: the readings hold the ambient light
 	read   []float64
 	ends   []*Response // the same readings at the ends of an assumed Rd
+	taken  float64     // standard uncertainty of an ambient luminance that was taken out of readings that held it
 
 	bands []band // per step: parts of the variance of Deviation
 }
@@ -211,6 +212,7 @@ func (r *Response) pick(keep []int) *Response {
 // follows e and rd. It reports false where it is not known what the monitor emits.
 func (r *Response) AtIlluminance(e photometry.Lux, rd photometry.PerLux) (*Response, bool) {
 	at := &Response{Bits: r.Bits, Scale: r.Scale, Light: r.Light.withIlluminance(e, rd), Noise: r.Noise, inside: r.inside, read: r.read}
+	at.taken = r.Light.spread(r.Noise)
 	for _, p := range r.Points {
 		if p.Emitted == nil {
 			return nil, false
@@ -221,3 +223,6 @@ func (r *Response) AtIlluminance(e photometry.Lux, rd photometry.PerLux) (*Respo
 	at.compute()
 	return at, true
 }
+
+// WithoutAmbient is what the monitor emits. It reports false where that is not known.
+func (r *Response) WithoutAmbient() (*Response, bool) { return r.AtIlluminance(0, 0) }
