@@ -54,6 +54,12 @@ type Assessment struct {
 	JNDStep JNDStep `json:"jnd_step"` // information, never judged
 	AnnexC  AnnexC  `json:"annex_c"`  // information, never judged
 
+	// Figures of places and of the pair by every formula: information. What is judged is among the findings.
+	Uniformity       []PlacesFigure `json:"uniformity,omitempty"`
+	PairMatch        []PlacesFigure `json:"pair_match,omitempty"`
+	ColourUniformity *float64       `json:"colour_uniformity,omitempty"` // greatest u'v' distance
+	ColourMatch      *float64       `json:"colour_match,omitempty"`      // u'v' distance
+
 	Findings    []Finding        `json:"findings"`
 	NotAssessed []Unassessed     `json:"not_assessed"`
 	Causes      []response.Cause `json:"causes"`
@@ -127,6 +133,15 @@ type Unassessed struct {
 	Reason   string `json:"reason"`
 }
 
+// PlacesFigure is the figure of one formula over places, or over a pair of screens. A fraction.
+type PlacesFigure struct {
+	Formula  string   `json:"formula"`
+	Level    *int     `json:"level,omitempty"` // of the field, where stated
+	Places   int      `json:"places"`
+	Value    float64  `json:"value"`
+	Interval Interval `json:"interval"`
+}
+
 // LuxRange is the room light in which every limit that depends on ambient light holds. A null end
 // with no reason is open: nothing binds there.
 type LuxRange struct {
@@ -134,9 +149,12 @@ type LuxRange struct {
 	LowBinds  string   `json:"low_binds"` // quantity, "" where nothing binds
 	High      *float64 `json:"high"`
 	HighBinds string   `json:"high_binds"`
-	Rd        *float64 `json:"rd_per_lx,omitempty"`
-	RdAssumed bool     `json:"rd_assumed,omitempty"`
-	Reason    string   `json:"reason,omitempty"`
+	// Unconfirmed: the limit that binds decides nothing until the site confirms it.
+	LowUnconfirmed  bool     `json:"low_unconfirmed,omitempty"`
+	HighUnconfirmed bool     `json:"high_unconfirmed,omitempty"`
+	Rd              *float64 `json:"rd_per_lx,omitempty"`
+	RdAssumed       bool     `json:"rd_assumed,omitempty"`
+	Reason          string   `json:"reason,omitempty"`
 }
 
 // NoiseFigure is the noise model that the intervals rest on.

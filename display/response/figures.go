@@ -7,6 +7,7 @@ import (
 	"gonum.org/v1/gonum/stat/distuv"
 
 	"evenstep/display/gsdf"
+	"evenstep/display/photometry"
 )
 
 // single is the factor for one 95 % interval.
@@ -46,6 +47,9 @@ func (r *Response) luminance(point int) Estimate {
 		return float64(at.Points[point].Luminance), []term{{point, 1}}
 	})
 }
+
+// HighestRead is the mean of the readings at the highest level, as the meter gave them.
+func (r *Response) HighestRead() photometry.CdM2 { return photometry.CdM2(r.read[len(r.read)-1]) }
 
 // Ratio is the luminance ratio r' = L'max/L'min. The reason is not empty where there is none.
 func (r *Response) Ratio() (e Estimate, reason string) {
