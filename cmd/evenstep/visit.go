@@ -3,9 +3,7 @@ package main
 import (
 	"errors"
 	"fmt"
-	"io/fs"
 	"math"
-	"os"
 	"strconv"
 	"strings"
 
@@ -18,14 +16,13 @@ import (
 
 // visitFlags are the flags that say what a readings file does not: the room light and the meter.
 type visitFlags struct {
-	ambient, illuminance, rd            float64
-	darkRoom, ambientIncluded           bool
-	repeatability, noiseFloor           string
-	gain, gainK                         string
-	resolution, offset                  float64
-	scheme, class, site                 string
-	set                                 func(name string) bool
-	repeatabilityValue, noiseFloorValue float64
+	ambient, illuminance, rd  float64
+	darkRoom, ambientIncluded bool
+	repeatability, noiseFloor string
+	gain, gainK               string
+	resolution, offset        float64
+	scheme, class, site       string
+	set                       func(name string) bool
 }
 
 func (v *visitFlags) add(c *cobra.Command) {
@@ -49,26 +46,12 @@ func (p program) openReadings(path string) (*readings.File, error) {
 	if path == "-" {
 		return readings.Parse("standard input", p.in)
 	}
-	f, err := os.Open(path)
+	f, err := open(path, "readings")
 	if err != nil {
-		return nil, openError(path, "readings", err)
+		return nil, err
 	}
 	defer f.Close()
-	if info, err := f.Stat(); err == nil && info.IsDir() {
-		return nil, fmt.Errorf("%s: is a folder; expected a readings file; name the file", path)
-	}
 	return readings.Parse(path, f)
-}
-
-// openError says in one line that a file the user named cannot be read.
-func openError(path, what string, err error) error {
-	switch {
-	case errors.Is(err, fs.ErrNotExist):
-		return fmt.Errorf("%s: there is no such file; expected a %s file; check the path", path, what)
-	case errors.Is(err, fs.ErrPermission):
-		return fmt.Errorf("%s: may not be read; expected a readable %s file; check its permissions", path, what)
-	}
-	return system(fmt.Errorf("%s: %w; expected a readable %s file", path, err, what))
 }
 
 // contradiction is the error for a flag that says something else than the file.

@@ -1,0 +1,179 @@
+package report
+
+import (
+	"fmt"
+	"math"
+
+	"evenstep/display/criteria"
+	"evenstep/display/gsdf"
+	"evenstep/display/response"
+)
+
+const jndAxis = "JND index"
+
+// ResponseChart shows the luminance of every level, with ambient light, at the JND index that the
+// level ought to have, on the line of the standard function (PS3.14 section 7.1).
+func ResponseChart(a criteria.Assessment, points []response.Point) Chart {
+	c := Chart{Title: "Luminance over JND index"}
+	if c.Empty = noSteps(a); c.Empty != "" {
+		return c
+	}
+	first, last := a.Steps[0].JNDFrom, a.Steps[len(a.Steps)-1].JNDTo
+	c.Note = fmt.Sprintf("%d levels from JND %s to %s: %s JNDs",
+		len(a.Steps)+1, number(first, 1), number(last, 1), number(last-first, 1))
+	index := map[int]float64{a.Steps[0].FromLevel: first}
+	for _, s := range a.Steps {
+		index[s.ToLevel] = s.JNDTo
+	}
+	c.Key = []KeyEntry{{Marker{Circle, true}, "measured"}}
+	lo, hi := a.LuminanceMin, a.LuminanceMax
+	for _, p := range points {
+		j, ok := index[p.Level]
+		if l := float64(p.Luminance); ok && l > 0 && finite(l) {
+			c.Marks = append(c.Marks, Mark{At: XY{j, l}, Marker: Marker{Circle, true}})
+			lo, hi = min(lo, l), max(hi, l)
+		}
+	}
+	const pieces = 48
+	var line Line
+	for i := range pieces + 1 {
+		j := first + (last-first)*float64(i)/pieces
+		l, err := gsdf.Luminance(gsdf.JND(j))
+		if err != nil {
+			continue // a rounding error beyond an end of the function
+		}
+		line.At = append(line.At, XY{j, float64(l)})
+		lo, hi = min(lo, float64(l)), max(hi, float64(l))
+	}
+	if n := len(line.At); n > 0 {
+		c.Labels = []Label{{line.At[n*2/5], "standard function"}}
+	}
+	if lo <= 0 {
+		lo = float64(gsdf.MinLuminance())
+	}
+	c.Lines = []Line{line}
+	c.X = spanOfJND(first, last)
+	c.Y = logAxis("luminance L' with ambient light, cd/m²", lo, hi)
+	return c
+}
+
+// DeviationChart shows the deviation of every step from the contrast that the standard function
+// asks for, in per cent, with its 95 % interval, and the limit where one was judged.
+func DeviationChart(a criteria.Assessment) Chart {
+	c := Chart{Title: "Deviation of contrast, step by step"}
+	if c.Empty = noSteps(a); c.Empty != "" {
+		return c
+	}
+	limits := deviationLimits(a.Findings)
+	limit := math.Inf(1)
+	reach := 0.05 // the axis shows at least 5 per cent either way, so that small noise looks small
+	for _, l := range limits {
+		limit, reach = min(limit, l), max(reach, l)
+		for _, y := range []float64{l, -l} {
+			c.Limits = append(c.Limits, LimitLine{Y: 100 * y, Text: signedPercent(y)})
+		}
+	}
+	if len(limits) > 0 {
+		c.Bands = []Band{{-100 * limit, 100 * limit}}
+	}
+	worst := 0
+	for i, s := range a.Steps {
+		reach = max(reach, math.Abs(s.Deviation))
+		if math.Abs(s.Deviation) > math.Abs(a.Steps[worst].Deviation) {
+			worst = i
+		}
+	}
+	bars := 0.0
+	for i, s := range a.Steps {
+		x := (s.JNDFrom + s.JNDTo) / 2
+		m := Mark{At: XY{x, 100 * s.Deviation}, Marker: Marker{Circle, false}}
+		if math.Abs(s.Deviation) > limit {
+			m.Marker.Shape = Triangle
+		}
+		if i == worst {
+			m.Ring = Diamond
+		}
+		lo, hi := s.DeviationInterval[0], s.DeviationInterval[1]
+		bars = max(bars, math.Abs(lo), math.Abs(hi))
+		c.Marks = append(c.Marks, m)
+		c.Bars = append(c.Bars, Bar{x, 100 * lo, 100 * hi})
+	}
+	// Intervals may be so wide at the dark end that no deviation could be seen beside them: they
+	// are shown up to twice the rest, and cut there.
+	reach = 1.12 * max(reach, min(bars, 2*reach))
+	w := a.Steps[worst]
+	c.Note = fmt.Sprintf("greatest: %s between levels %d and %d", signedPercent(w.Deviation), w.FromLevel, w.ToLevel)
+	c.Key = deviationKey(len(limits) > 0)
+	c.X = spanOfJND(a.Steps[0].JNDFrom, a.Steps[len(a.Steps)-1].JNDTo)
+	c.Y = linearAxis("deviation, % (bars: 95 % intervals, over all steps at once)", -100*reach, 100*reach, 8)
+	for i, t := range c.Y.Ticks {
+		if t.At > 0 {
+			c.Y.Ticks[i].Text = "+" + t.Text
+		}
+	}
+	return c
+}
+
+func deviationKey(limited bool) []KeyEntry {
+	greatest := KeyEntry{Marker{Diamond, true}, "greatest"}
+	if !limited {
+		return []KeyEntry{{Marker{Circle, false}, "step"}, greatest}
+	}
+	return []KeyEntry{
+		{Marker{Circle, false}, "within"},
+		{Marker{Triangle, false}, "beyond the limit"},
+		greatest,
+		{Marker{}, "limit"},
+	}
+}
+
+// deviationLimits are the limits of contrast deviation, as fractions, each once; the ones that
+// decide where there are any, else the ones that are only compared.
+func deviationLimits(findings []criteria.Finding) []float64 {
+	var deciding, other []float64
+	add := func(to []float64, v float64) []float64 {
+		for _, have := range to {
+			if have == v {
+				return to
+			}
+		}
+		return append(to, v)
+	}
+	for _, f := range findings {
+		switch {
+		case f.Quantity != string(criteria.ContrastDeviation) || f.Limit <= 0:
+		case f.Verdict == criteria.NotAssessed:
+			other = add(other, f.Limit)
+		default:
+			deciding = add(deciding, f.Limit)
+		}
+	}
+	if len(deciding) > 0 {
+		return deciding
+	}
+	return other
+}
+
+// spanOfJND is the axis of both charts, with air at both ends.
+func spanOfJND(first, last float64) Axis {
+	air := 0.03 * (last - first)
+	return linearAxis(jndAxis, first-air, last+air, 7)
+}
+
+// noSteps is the reason for which there is nothing to draw, "" where there is.
+func noSteps(a criteria.Assessment) string {
+	for _, s := range a.Steps {
+		if !finite(s.JNDFrom, s.JNDTo, s.Deviation, s.DeviationInterval[0], s.DeviationInterval[1]) || s.JNDTo <= s.JNDFrom {
+			return "the steps of the record hold figures that cannot be drawn"
+		}
+	}
+	switch {
+	case len(a.Steps) > 0:
+		return ""
+	case a.JNDReason != "":
+		return a.JNDReason
+	case a.MaxDeviationReason != "":
+		return a.MaxDeviationReason
+	}
+	return "the record holds no steps"
+}

@@ -1,0 +1,160 @@
+package report
+
+import (
+	"errors"
+	"fmt"
+	"io"
+	"time"
+
+	"codeberg.org/go-pdf/fpdf"
+
+	"evenstep/display/record"
+)
+
+// Paper is a paper size.
+type Paper string
+
+// The paper sizes.
+const (
+	A4     Paper = "A4"
+	Letter Paper = "Letter"
+)
+
+var papers = map[Paper]paper{
+	A4:     {595.28, 841.89},
+	Letter: {612, 792},
+}
+
+// Options says how a PDF is made. The zero value is A4.
+type Options struct {
+	Paper Paper
+}
+
+// PDF writes the record as PDF 1.4 with its fonts embedded and its charts as vectors. The usual
+// record takes one or two pages; type and charts grow smaller, to a floor, before a third is begun,
+// and the first page then says so. The same record gives the same bytes: no clock is read, and the
+// dates of the document are those of the visit. Nothing is written where it fails.
+func PDF(w io.Writer, r *record.Record, o Options) error {
+	if r == nil {
+		return errors.New("report: there is no record; expected one; assess a visit first")
+	}
+	if o.Paper == "" {
+		o.Paper = A4
+	}
+	paper, ok := papers[o.Paper]
+	if !ok {
+		return fmt.Errorf("report: paper is %q; expected %s or %s; choose one", o.Paper, A4, Letter)
+	}
+	at, err := time.Parse(time.RFC3339, r.Visit.Time)
+	if err != nil {
+		return fmt.Errorf("report: time of the visit is %q; expected RFC 3339, as 2024-05-17T09:30:00Z; correct the record: %w", r.Visit.Time, err)
+	}
+	s, err := fit(r, at, paper)
+	if err != nil {
+		return err
+	}
+	return write(w, s, r, at.UTC())
+}
+
+// fit lays the record out: on one page where that needs no small type, else as loosely as it can be
+// on two, else on as many as it needs.
+func fit(r *record.Record, at time.Time, p paper) (*sheet, error) {
+	m, err := newRuler()
+	if err != nil {
+		return nil, err
+	}
+	compose := func(t tight, told bool) *sheet {
+		s := &sheet{ruler: m, tight: t, paper: p}
+		newBody(r, at, told).compose(s)
+		return s
+	}
+	const (
+		usual   = 2
+		onePage = 3 // so many kinds of setting are tried for one page
+	)
+	for _, t := range tightness[:onePage] {
+		if s := compose(t, false); len(s.pages) == 1 {
+			return s, nil
+		}
+	}
+	last := compose(tightness[len(tightness)-1], false)
+	least := len(last.pages)
+	for _, t := range tightness {
+		s := compose(t, least > usual)
+		if n := len(s.pages); n <= max(usual, least) {
+			return s, nil
+		}
+	}
+	return compose(tightness[len(tightness)-1], true), nil
+}
+
+// write replays the laid-out pages into a PDF.
+func write(w io.Writer, s *sheet, r *record.Record, at time.Time) error {
+	pdf := fpdf.NewCustom(&fpdf.InitType{
+		UnitStr: "pt",
+		Size:    fpdf.SizeType{Wd: s.paper.width, Ht: s.paper.height},
+	})
+	pdf.SetCatalogSort(true) // with the two dates: byte for byte the same
+	pdf.SetCreationDate(at)
+	pdf.SetModificationDate(at)
+	pdf.SetProducer(s.printable(r.Program, Regular), true)
+	pdf.SetCreator(s.printable(r.Program, Regular), true)
+	pdf.SetTitle(s.printable(title+" "+r.Monitor.Serial, Regular), true)
+	pdf.SetLang("en")
+	pdf.SetMargins(0, 0, 0)
+	pdf.SetAutoPageBreak(false, 0)
+	names := map[Face]string{Regular: "go", Bold: "gobold", Mono: "gomono"}
+	for _, face := range []Face{Regular, Bold, Mono} {
+		pdf.AddUTF8FontFromBytes(names[face], "", typefaces[face])
+	}
+	for _, p := range s.pages {
+		pdf.AddPage()
+		pdf.SetLineCapStyle("butt")
+		pdf.SetLineJoinStyle("miter")
+		for _, o := range p.ops {
+			draw(pdf, o, names)
+		}
+	}
+	if err := pdf.Error(); err != nil {
+		return fmt.Errorf("report: PDF: %w", err)
+	}
+	if err := pdf.Output(w); err != nil {
+		return fmt.Errorf("report: PDF: %w", err)
+	}
+	return nil
+}
+
+func draw(pdf *fpdf.Fpdf, o op, names map[Face]string) {
+	path := func(at []XY) {
+		pdf.MoveTo(at[0].X, at[0].Y)
+		for _, p := range at[1:] {
+			pdf.LineTo(p.X, p.Y)
+		}
+	}
+	switch {
+	case len(o.line) > 1:
+		level := o.stroke.Gray.level()
+		pdf.SetDrawColor(level, level, level)
+		pdf.SetLineWidth(o.stroke.Width)
+		if o.stroke.Dash > 0 {
+			pdf.SetDashPattern([]float64{o.stroke.Dash, o.stroke.Dash}, 0)
+		} else {
+			pdf.SetDashPattern([]float64{}, 0)
+		}
+		path(o.line)
+		pdf.DrawPath("D")
+	case len(o.area) > 2:
+		level := o.fill.level()
+		pdf.SetFillColor(level, level, level)
+		path(o.area)
+		pdf.DrawPath("F")
+	case o.text != "":
+		level := o.set.Gray.level()
+		pdf.SetTextColor(level, level, level)
+		pdf.SetFont(names[o.set.Face], "", o.set.Size)
+		pdf.Text(o.at.X, o.at.Y, o.text)
+	}
+}
+
+// level is the ink as an 8-bit level.
+func (g Gray) level() int { return int(255*float64(g) + 0.5) }
