@@ -45,8 +45,7 @@ func Seal(r Record) (*Record, []byte, error) {
 	if err != nil {
 		return nil, nil, fmt.Errorf("record: %w", err)
 	}
-	sum := sha256.Sum256(body)
-	r.SHA256 = hex.EncodeToString(sum[:])
+	r.SHA256 = hashOf(body)
 	text, err := r.canonical()
 	if err != nil {
 		return nil, nil, fmt.Errorf("record: %w", err)
@@ -165,8 +164,7 @@ func Read(name string, text []byte) (*Record, error) {
 		return nil, fault(ErrAltered, restore)
 	}
 	bare := slices.DeleteFunc(slices.Clone(top), func(m member) bool { return m.key == "sha256" })
-	sum := sha256.Sum256(appendCanonical(nil, bare))
-	if top.text("sha256") != hex.EncodeToString(sum[:]) {
+	if top.text("sha256") != hashOf(appendCanonical(nil, bare)) {
 		return nil, fault(ErrAltered, restore)
 	}
 	var r Record
@@ -179,6 +177,11 @@ func Read(name string, text []byte) (*Record, error) {
 		return nil, fault(ErrAltered, restore)
 	}
 	return &r, nil
+}
+
+func hashOf(text []byte) string {
+	sum := sha256.Sum256(text)
+	return hex.EncodeToString(sum[:])
 }
 
 func (o object) get(key string) any {

@@ -266,7 +266,7 @@ func (b *body) greatest() string {
 	}
 	s := reasoned(a.MaxDeviation, a.MaxDeviationReason, percent)
 	if a.MaxDeviation != nil && a.MaxDeviationInterval != nil {
-		s += " (" + decimal(100*a.MaxDeviationInterval[0], 1) + " to " + percent(a.MaxDeviationInterval[1]) + ")"
+		s += " (95 %: " + decimal(100*a.MaxDeviationInterval[0], 1) + " to " + percent(a.MaxDeviationInterval[1]) + ")"
 	}
 	if a.MaxDeviationFromLevel != nil && a.MaxDeviationToLevel != nil {
 		s += fmt.Sprintf(", levels %d to %d", *a.MaxDeviationFromLevel, *a.MaxDeviationToLevel)
@@ -291,7 +291,12 @@ func (b *body) charts(s *sheet) {
 	if luminance.Empty != "" && deviation.Empty != "" {
 		h = s.body * 9
 	}
+	if s.parted && len(s.pages) == 1 {
+		s.turn()
+		h *= 1.25 // a page with little else on it
+	}
 	s.need(h)
+	s.charted = len(s.pages)
 	luminance.Draw(s, Box{s.left(), s.y, w, h}, s.small)
 	deviation.Draw(s, Box{s.left() + w + gutter, s.y, w, h}, s.small)
 	s.y += h

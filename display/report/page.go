@@ -17,20 +17,22 @@ type op struct {
 // page is what stands on one page.
 type page struct{ ops []op }
 
-// tight says how closely a report is set. The first is the usual one, the others make room.
+// tight says how closely a report is set.
 type tight struct {
 	body, small float64 // type sizes in points
 	gap         float64 // between sections, in points
 	chart       float64 // height of the charts in points
+	nameLines   int     // most lines of a name, a serial and the like
 }
 
 // The least type is 6 points, which reads at arm's length on paper; nothing is set smaller.
 var tightness = []tight{
-	{8.4, 7.2, 14, 190},
-	{8, 6.9, 11, 165},
-	{7.6, 6.6, 9, 145},
-	{7.2, 6.3, 7, 125},
-	{6.8, 6, 5, 110},
+	{9, 7.7, 17, 200, 3},
+	{8.4, 7.2, 14, 180, 3},
+	{8, 6.9, 11, 150, 3},
+	{7.6, 6.6, 9, 126, 3},
+	{7.2, 6.3, 7, 112, 2},
+	{6.8, 6, 4, 96, 2},
 }
 
 // sheet is a document while it is laid out: pages of drawing steps, and where the next block goes.
@@ -41,6 +43,12 @@ type sheet struct {
 	paper paper
 	pages []*page
 	y     float64
+	// parted says that the charts begin the second page.
+	parted bool
+	// slack is the height left free above the foot of the last page.
+	slack float64
+	// charted is the number of the page that the charts stand on.
+	charted int
 	// top is drawn at the head of every page after the first.
 	top func(s *sheet)
 }
@@ -51,7 +59,7 @@ type paper struct{ width, height float64 }
 const (
 	side = 48.0
 	head = 42.0
-	foot = 58.0
+	foot = 52.0
 )
 
 func (s *sheet) left() float64   { return side }
@@ -167,7 +175,7 @@ func (s *sheet) heading(text string, keep float64) {
 // pair is a word and what it says.
 type pair struct{ key, value string }
 
-// pairsHeight sets pairs in a column where set is true, and returns their height.
+// pairs sets pairs in a column where set is true, and returns their height.
 func (s *sheet) pairs(list []pair, x, y, w float64, set bool) float64 {
 	key, value := s.quiet(), s.plain()
 	keyWidth := 0.0
@@ -177,8 +185,7 @@ func (s *sheet) pairs(list []pair, x, y, w float64, set bool) float64 {
 	keyWidth = min(keyWidth+8, w*0.45)
 	start := y
 	for _, p := range list {
-		const most = 3
-		lines := s.lines(p.value, value, w-keyWidth, most)
+		lines := s.lines(p.value, value, w-keyWidth, s.nameLines)
 		if set {
 			s.Text(XY{x, y + value.Size}, shorten(s, p.key, key, keyWidth-4), key)
 			s.setLines(lines, x+keyWidth, y, value)

@@ -57,35 +57,55 @@ func PDF(w io.Writer, r *record.Record, o Options) error {
 }
 
 // fit lays the record out: on one page where that needs no small type, else as loosely as it can be
-// on two, else on as many as it needs.
+// on two, else on as many as it needs. Room that is left on the page of the charts goes to them.
 func fit(r *record.Record, at time.Time, p paper) (*sheet, error) {
 	m, err := newRuler()
 	if err != nil {
 		return nil, err
 	}
-	compose := func(t tight, told bool) *sheet {
-		s := &sheet{ruler: m, tight: t, paper: p}
+	compose := func(t tight, parted, told bool) *sheet {
+		s := &sheet{ruler: m, tight: t, paper: p, parted: parted}
 		newBody(r, at, told).compose(s)
+		return s
+	}
+	grown := func(s *sheet, told bool) *sheet {
+		const (
+			tallest = 230.0 // taller charts show no more
+			parts   = 1.25  // what a parted sheet adds to the height
+		)
+		if s.charted != len(s.pages) || s.chart >= tallest {
+			return s
+		}
+		t := s.tight
+		t.chart = min(tallest, t.chart+s.slack/parts)
+		if g := compose(t, s.parted, told); len(g.pages) == len(s.pages) {
+			return g
+		}
 		return s
 	}
 	const (
 		usual   = 2
-		onePage = 3 // so many kinds of setting are tried for one page
+		onePage = 4 // so many kinds of setting are tried for one page
 	)
 	for _, t := range tightness[:onePage] {
-		if s := compose(t, false); len(s.pages) == 1 {
-			return s, nil
+		if s := compose(t, false, false); len(s.pages) == 1 {
+			return grown(s, false), nil
 		}
 	}
-	last := compose(tightness[len(tightness)-1], false)
-	least := len(last.pages)
 	for _, t := range tightness {
-		s := compose(t, least > usual)
-		if n := len(s.pages); n <= max(usual, least) {
-			return s, nil
+		for _, parted := range []bool{true, false} {
+			if s := compose(t, parted, false); len(s.pages) <= usual {
+				return grown(s, false), nil
+			}
 		}
 	}
-	return compose(tightness[len(tightness)-1], true), nil
+	last := compose(tightness[len(tightness)-1], false, true)
+	for _, t := range tightness {
+		if s := compose(t, false, true); len(s.pages) <= len(last.pages) {
+			return grown(s, true), nil
+		}
+	}
+	return last, nil
 }
 
 // write replays the laid-out pages into a PDF.

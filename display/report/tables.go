@@ -27,6 +27,7 @@ func (b *body) findings(s *sheet) {
 		return
 	}
 	s.heading("Findings", leading(s.quiet())*4)
+	open := false
 	b.findingHead(s)
 	for i, f := range b.a.Findings {
 		row := b.row(s, f)
@@ -37,6 +38,11 @@ func (b *body) findings(s *sheet) {
 			s.rule(s.y-1.6, Stroke{Width: 0.3, Gray: light})
 		}
 		row.set(s)
+		open = open || unconfirmed(f)
+	}
+	if open {
+		s.paragraph("Limit not confirmed: the document was not read. Such a limit decides once the site has confirmed that it stands there, unless it is for information only.",
+			s.left(), s.quiet(), 2)
 	}
 }
 
@@ -146,8 +152,8 @@ func (b *body) causes(s *sheet) {
 	for _, c := range b.a.Causes {
 		const most = 6
 		names := s.lines(strings.Join(c.Causes, ", or "), s.bold(), s.width(), 2)
-		text := append(s.lines("Evidence: "+c.Evidence, s.plain(), s.width(), most),
-			s.lines("What to do: "+c.Advice, s.plain(), s.width(), most)...)
+		text := append(s.lines("Evidence: "+prose(c.Evidence), s.plain(), s.width(), most),
+			s.lines("What to do: "+prose(c.Advice), s.plain(), s.width(), most)...)
 		s.need(float64(len(names)+len(text)) * leading(s.plain()))
 		s.y = s.setLines(names, s.left(), s.y, s.bold())
 		s.y = s.setLines(text, s.left(), s.y, s.plain()) + 3
@@ -167,7 +173,7 @@ func (b *body) places(s *sheet) {
 	if len(fields) == 0 && len(other) == 0 {
 		return
 	}
-	cell := Box{W: 52, H: leading(s.plain())*1.25 + 2}
+	cell := Box{W: 52, H: leading(s.plain())*1.15 + 1}
 	h := 3*cell.H + leading(s.quiet()) + 4
 	s.heading("Places, cd/m² as read", h)
 	x := s.left()
@@ -269,11 +275,12 @@ func (b *body) close(s *sheet) {
 	t := s.plain()
 	lines := s.lines(caution, t, s.width()-16, 5)
 	cautionHeight := float64(len(lines))*leading(t) + 10
-	const signing = 44
+	const signing = 40
 	h := cautionHeight + signing
 	s.y += s.gap
 	s.need(h)
 	y := max(s.y, s.bottom()-h)
+	s.slack = y - s.y
 	s.Polyline([]XY{{s.left(), y}, {s.left(), y + cautionHeight - 4}}, Stroke{Width: 2, Gray: dark})
 	s.setLines(lines, s.left()+12, y+2, t)
 	y += cautionHeight + signing - 14

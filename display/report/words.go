@@ -256,6 +256,9 @@ func AmbientSource(source string) string {
 
 // RoomLight says in one sentence or two in which room light the limits hold and what binds at the ends.
 func RoomLight(r criteria.LuxRange) string {
+	if r.Low != nil && *r.Low == 0 && r.LowBinds == "" {
+		r.Low = nil // there is no less light than none
+	}
 	if r.Low == nil && r.High == nil {
 		if r.Reason != "" {
 			return "No range of room light: " + prose(r.Reason) + "."
@@ -354,14 +357,15 @@ func Details(f criteria.Finding) []string {
 		}
 	}
 	if f.Verdict == criteria.NotAssessed && f.Against != "" && f.Against != criteria.NotAssessed {
-		add("does not decide; held against the limit, the value " + againstWords(f.Against))
+		add("does not decide; the value " + againstWords(f.Against))
 	}
 	if f.Provisional {
 		add(strings.TrimSuffix("provisional: "+f.ProvisionalReason, ": "))
 	}
-	add(prose(f.Note))
-	if unconfirmed(f) && !strings.Contains(f.Note, "not confirmed") {
-		add("limit not confirmed")
+	for _, part := range strings.Split(f.Note, "; ") {
+		if !strings.HasPrefix(part, "limit not confirmed") { // said once, with the confidence
+			add(prose(part))
+		}
 	}
 	add(f.Formula)
 	if f.Levels > 0 {
@@ -377,8 +381,10 @@ func Details(f criteria.Finding) []string {
 	if f.Source != "" {
 		add("source: " + f.Source)
 	}
-	if !strings.Contains(f.Note, "("+f.Confidence+")") { // the note says it already
-		add(Confidence(f.Confidence))
+	if known := Confidence(f.Confidence); unconfirmed(f) {
+		add(known + ", not confirmed")
+	} else {
+		add(known)
 	}
 	if c := f.Confirmed; c != nil {
 		s := "confirmed by " + c.Person + " on " + c.Date + " in " + c.Document
