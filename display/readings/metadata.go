@@ -39,10 +39,7 @@ func (n *numbers) metadata() (Metadata, error) {
 	m := Metadata{Bits: defaultBits}
 	seen := map[string]int{}
 	for _, c := range n.comments {
-		key, value, ok := strings.Cut(c.s, ":")
-		if !ok {
-			continue
-		}
+		key, value, _ := strings.Cut(c.s, ":")
 		key, value = strings.TrimSpace(key), strings.TrimSpace(value)
 		if !slices.Contains(metadataKeys, key) {
 			if near := mistypedKey(key); near != "" {

@@ -93,11 +93,11 @@ func (n *numbers) luminance(r row) (photometry.CdM2, error) {
 	if err != nil {
 		return 0, err
 	}
-	l := photometry.CdM2(v)
+	l, found := photometry.CdM2(v), luminanceColumn+" "+quote(s)
 	if n.unit() == footLambert {
-		l = photometry.FootLambert(v).CdM2()
+		l, found = photometry.FootLambert(v).CdM2(), found+" in fL"
 	}
-	switch found := luminanceColumn + " " + quote(s); {
+	switch {
 	case l < 0:
 		return 0, n.fail(r.line, found+" below zero", "0 or more", "set the zero of the meter and measure again")
 	case l > maxLuminance:

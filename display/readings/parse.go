@@ -127,7 +127,7 @@ func readTime(s string) (time.Time, error) {
 	if err := t.UnmarshalText([]byte(s)); err != nil {
 		return t, err
 	}
-	if _, offset := t.Zone(); offset != 0 {
+	if _, offset := t.Zone(); offset != 0 && !t.IsZero() {
 		return t.In(time.FixedZone("", offset)), nil
 	}
 	return t.UTC(), nil

@@ -41,7 +41,7 @@ type sheet struct {
 	name     string
 	sha256   string
 	delim    byte
-	comments []text // without the leading "#"
+	comments []text // those with a colon, without the leading "#"
 	rows     []row
 	at       map[string]int    // kind of column to index
 	heading  map[string]string // kind of column to its name in the file, lower case
@@ -77,10 +77,12 @@ func readSheet(name string, r io.Reader, headings []heading, required ...string)
 	}
 	content := lines[:0]
 	for _, l := range lines {
-		if comment, ok := strings.CutPrefix(strings.TrimLeft(l.s, " \t"), "#"); ok {
-			s.comments = append(s.comments, text{l.line, comment})
-		} else {
+		comment, ok := strings.CutPrefix(strings.TrimLeft(l.s, " \t"), "#")
+		switch {
+		case !ok:
 			content = append(content, l)
+		case strings.Contains(comment, ":"):
+			s.comments = append(s.comments, text{l.line, comment})
 		}
 	}
 	if len(content) == 0 {
@@ -232,7 +234,7 @@ func (s *sheet) badQuote(line int, problem string) error {
 	return s.fail(line, problem, `cells as they are or wholly in double quotes, such as "0.64"`, "close the quote or delete it")
 }
 
-// delimiter is the first of tab, semicolon and comma that a header row has outside quotes.
+// delimiter is what stands most often in a header row, outside quotes, of tab, semicolon and comma.
 func delimiter(header string) byte {
 	var bare strings.Builder
 	for i, part := range strings.Split(header, `"`) {
@@ -240,12 +242,13 @@ func delimiter(header string) byte {
 			bare.WriteString(part)
 		}
 	}
-	for _, d := range []byte{'\t', ';'} {
-		if strings.IndexByte(strings.TrimSpace(bare.String()), d) >= 0 {
-			return d
+	best, most := byte(','), 0
+	for _, d := range []byte("\t;,") {
+		if n := strings.Count(bare.String(), string(d)); n > most {
+			best, most = d, n
 		}
 	}
-	return ','
+	return best
 }
 
 func delimiterName(d byte) string {

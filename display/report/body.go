@@ -43,9 +43,9 @@ func (b *body) compose(s *sheet) {
 	b.identity(s)
 	b.findings(s)
 	b.unassessed(s)
+	b.figures(s)
 	b.charts(s)
 	b.causes(s)
-	b.figures(s)
 	b.places(s)
 	b.notes(s)
 	b.close(s)
@@ -200,7 +200,7 @@ func (b *body) identity(s *sheet) {
 		pair{"meter gain", gain},
 		pair{"levels", b.levels()},
 	)
-	s.columns(who, room)
+	s.columns(who, room, s.nameLines)
 }
 
 func (b *body) serial() string { return stated(b.r.Monitor.Serial) }
@@ -254,7 +254,8 @@ func (b *body) figures(s *sheet) {
 		{"JNDs a step", reasoned(a.JNDStep.MaxDeviation, a.JNDStep.Reason, signedPercent) + information},
 		{"PS3.14 Annex C", b.annexC() + information},
 	}
-	s.columns(one, two)
+	const most = 5
+	s.columns(one, two, most)
 }
 
 const information = " (information)"

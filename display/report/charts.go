@@ -48,9 +48,9 @@ func ResponseChart(a criteria.Assessment, points []response.Point) Chart {
 	if n := len(line.At); n > 0 {
 		c.Labels = []Label{{line.At[n*2/5], "standard function"}}
 	}
-	if lo <= 0 {
-		lo = float64(gsdf.MinLuminance())
-	}
+	// A mistyped reading must not stretch the axis beyond use: its marker then lies on the edge.
+	const least, most = 0.001, 100000
+	lo, hi = min(most/10, max(least, lo)), max(least*10, min(most, hi))
 	c.Lines = []Line{line}
 	c.X = spanOfJND(first, last)
 	c.Y = logAxis("luminance L' with ambient light, cd/m²", lo, hi)
@@ -100,7 +100,8 @@ func DeviationChart(a criteria.Assessment) Chart {
 	}
 	// Intervals may be so wide at the dark end that no deviation could be seen beside them: they
 	// are shown up to twice the rest, and cut there.
-	reach = 1.12 * max(reach, min(bars, 2*reach))
+	const most = 50 // fifty times too much contrast: beyond it the marker lies on the edge
+	reach = min(most, 1.12*max(reach, min(bars, 2*reach)))
 	w := a.Steps[worst]
 	c.Note = fmt.Sprintf("greatest: %s between levels %d and %d", signedPercent(w.Deviation), w.FromLevel, w.ToLevel)
 	c.Key = deviationKey(len(limits) > 0)
@@ -171,9 +172,9 @@ func noSteps(a criteria.Assessment) string {
 	case len(a.Steps) > 0:
 		return ""
 	case a.JNDReason != "":
-		return a.JNDReason
+		return prose(a.JNDReason)
 	case a.MaxDeviationReason != "":
-		return a.MaxDeviationReason
+		return prose(a.MaxDeviationReason)
 	}
 	return "the record holds no steps"
 }

@@ -175,8 +175,9 @@ func (s *sheet) heading(text string, keep float64) {
 // pair is a word and what it says.
 type pair struct{ key, value string }
 
-// pairs sets pairs in a column where set is true, and returns their height.
-func (s *sheet) pairs(list []pair, x, y, w float64, set bool) float64 {
+// pairs sets pairs in a column where set is true, each value on at most most lines, and returns
+// their height.
+func (s *sheet) pairs(list []pair, x, y, w float64, most int, set bool) float64 {
 	key, value := s.quiet(), s.plain()
 	keyWidth := 0.0
 	for _, p := range list {
@@ -185,7 +186,7 @@ func (s *sheet) pairs(list []pair, x, y, w float64, set bool) float64 {
 	keyWidth = min(keyWidth+8, w*0.45)
 	start := y
 	for _, p := range list {
-		lines := s.lines(p.value, value, w-keyWidth, s.nameLines)
+		lines := s.lines(p.value, value, w-keyWidth, most)
 		if set {
 			s.Text(XY{x, y + value.Size}, shorten(s, p.key, key, keyWidth-4), key)
 			s.setLines(lines, x+keyWidth, y, value)
@@ -196,12 +197,12 @@ func (s *sheet) pairs(list []pair, x, y, w float64, set bool) float64 {
 }
 
 // columns sets two columns of pairs side by side.
-func (s *sheet) columns(a, b []pair) {
+func (s *sheet) columns(a, b []pair, most int) {
 	const gutter = 22
 	w := (s.width() - gutter) / 2
-	h := max(s.pairs(a, 0, 0, w, false), s.pairs(b, 0, 0, w, false))
+	h := max(s.pairs(a, 0, 0, w, most, false), s.pairs(b, 0, 0, w, most, false))
 	s.need(h)
-	s.pairs(a, s.left(), s.y, w, true)
-	s.pairs(b, s.left()+w+gutter, s.y, w, true)
+	s.pairs(a, s.left(), s.y, w, most, true)
+	s.pairs(b, s.left()+w+gutter, s.y, w, most, true)
 	s.y += h
 }

@@ -80,7 +80,9 @@ func (b *body) row(s *sheet, f criteria.Finding) row {
 		}
 		cell := s.lines(texts[i], t, w, 3)
 		r.cells = append(r.cells, cell)
-		main = max(main, len(cell))
+		if i > 0 { // the details stand beside the verdict, however long that is
+			main = max(main, len(cell))
+		}
 	}
 	if f.Provisional {
 		r.under = append(r.under, "provisional")
@@ -111,7 +113,6 @@ func (r row) set(s *sheet) {
 		below := s.setLines(r.cells[i], at, y, t)
 		if i == 0 {
 			s.setLines(r.under, at, below, s.quiet())
-			main = max(main, len(r.cells[i]))
 		}
 		x += c.part * s.width()
 	}
