@@ -76,7 +76,8 @@ Exit code 0: meets, or no scheme was asked for. 1: a limit is not met, or none c
 }
 
 const caution = `The verdict supports a qualified person and depends on the scheme's edition and on how well each
-limit is known. Local rules and licensed practice decide.`
+limit is known. Local rules and licensed practice decide. Do not read clinically on a monitor that
+fails.`
 
 // oneFile is the argument check of a command that takes one file.
 func oneFile(what string) cobra.PositionalArgs {

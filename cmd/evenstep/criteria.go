@@ -33,9 +33,9 @@ func (p program) criteriaCommand() *cobra.Command {
 			}
 			t := &page{}
 			for _, s := range all {
-				t.line(pad(s.ID, 22) + s.Name + ", " + s.Edition)
+				t.paragraph("", s.ID+": "+s.Name+", "+s.Edition)
 				for _, k := range s.Classes {
-					t.line("    " + pad(k.ID, 30) + k.Name)
+					t.line("  " + pad(k.ID, 29) + k.Name)
 				}
 			}
 			return p.printText(t)

@@ -47,7 +47,7 @@ var errFails = &failure{code: exitFails, err: errors.New("")}
 // run executes one command line and returns the exit code. Errors go to p.err as one line.
 func (p program) run(ctx context.Context, args []string) int {
 	root := p.root()
-	root.SetArgs(args)
+	root.SetArgs(append([]string{}, args...)) // a nil list would mean the arguments of the process
 	root.SetIn(p.in)
 	root.SetOut(p.out)
 	root.SetErr(p.err)

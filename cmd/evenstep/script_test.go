@@ -31,16 +31,12 @@ func TestMain(m *testing.M) {
 }
 
 func TestScripts(t *testing.T) {
-	readings, err := filepath.Abs(filepath.Join("..", "..", "testdata", "readings"))
-	if err != nil {
-		t.Fatal(err)
-	}
 	testscript.Run(t, testscript.Params{
 		Dir:           filepath.Join("testdata", "script"),
 		UpdateScripts: *update,
 		Setup: func(e *testscript.Env) error {
-			e.Setenv("READINGS", readings)
-			return nil
+			e.Setenv("READINGS", "readings")
+			return os.CopyFS(filepath.Join(e.WorkDir, "readings"), os.DirFS(filepath.Join("..", "..", "testdata", "readings")))
 		},
 		Cmds: map[string]func(*testscript.TestScript, bool, []string){
 			"code": exitCode, "oneline": oneLineOf, "json": jsonHas, "width": widthOf,

@@ -3,6 +3,7 @@ package main
 import (
 	"fmt"
 	"io"
+	"slices"
 	"strconv"
 	"strings"
 	"unicode/utf8"
@@ -63,10 +64,13 @@ func (a *assessFlags) print(w io.Writer, f *readings.File, r *record.Record) err
 	if len(s.Findings) > 0 {
 		t.findings(s.Findings)
 	}
-	if len(s.NotAssessed) > 0 {
+	if missing(s) {
 		t.line("")
 		t.line("not assessed")
 		for _, n := range s.NotAssessed {
+			if inTable(s.Findings, n) {
+				continue
+			}
 			name, formula, _ := strings.Cut(n.Quantity, " (")
 			if formula != "" {
 				formula = " (" + formula
@@ -106,6 +110,21 @@ func (a *assessFlags) print(w io.Writer, f *readings.File, r *record.Record) err
 	}
 	_, err := io.WriteString(w, t.String())
 	return err
+}
+
+// inTable says whether a limit that was not judged stands in the table of findings, with its reason.
+func inTable(fs []criteria.Finding, n criteria.Unassessed) bool {
+	name, formula, _ := strings.Cut(strings.TrimSuffix(n.Quantity, ")"), " (")
+	for _, f := range fs {
+		if f.Quantity == name && f.Verdict == criteria.NotAssessed && strings.Contains(f.Formula, formula) {
+			return true
+		}
+	}
+	return false
+}
+
+func missing(s *criteria.Assessment) bool {
+	return slices.ContainsFunc(s.NotAssessed, func(n criteria.Unassessed) bool { return !inTable(s.Findings, n) })
 }
 
 // levelsWithoutSteps is what has to be added to the number of steps to give the number of levels.
@@ -181,7 +200,10 @@ func (t *page) findings(fs []criteria.Finding) {
 		if f.Provisional {
 			verdict += ", provisional"
 		}
-		rows = append(rows, []string{report.Quantity(f), report.Value(f), report.Interval(f), report.Limit(f), verdict})
+		value := report.Value(f)
+		_, unit, _ := strings.Cut(value, " ")
+		interval := strings.TrimSpace(strings.TrimSuffix(report.Interval(f), unit))
+		rows = append(rows, []string{report.Quantity(f), value, interval, report.Limit(f), verdict})
 	}
 	width := make([]int, 5)
 	for _, r := range rows {
@@ -215,7 +237,7 @@ func notes(f criteria.Finding) string {
 		out = append(out, f.ProvisionalReason)
 	}
 	if f.Verdict == criteria.NotAssessed {
-		out = append(out, "against the limit: "+string(f.Against))
+		out = append(out, "held against the limit: "+string(f.Against))
 	}
 	if f.Note != "" {
 		out = append(out, f.Note)
@@ -225,8 +247,8 @@ func notes(f criteria.Finding) string {
 		out = append(out, fmt.Sprintf("the site's own limit in place of %s %v (%s, %s)", f.Override.Comparison, f.Override.Limit, f.Override.Name, f.Override.Date))
 	case f.Confirmed != nil:
 		out = append(out, fmt.Sprintf("limit confirmed in %s, page %s (%s, %s)", f.Confirmed.Document, f.Confirmed.Page, f.Confirmed.Person, f.Confirmed.Date))
-	default:
-		out = append(out, "limit: "+f.Confidence)
+	case !strings.Contains(f.Note, "("+f.Confidence+")"):
+		out = append(out, "limit "+f.Confidence)
 	}
 	return strings.Join(out, "; ")
 }

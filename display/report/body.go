@@ -17,18 +17,19 @@ const caution = "This record supports qualified persons; by itself it declares n
 	"The verdict depends on the edition of the scheme and on how well each limit is known. " +
 	"Local rules and licensed practice decide. Do not read clinically on a monitor that fails."
 
+const monitorKey = "monitor"
+
 const notStated = "not stated"
 
 // body is the content of a report.
 type body struct {
-	r    *record.Record
-	a    criteria.Assessment
-	at   time.Time
-	told bool // say that more than two pages were needed
+	r  *record.Record
+	a  criteria.Assessment
+	at time.Time
 }
 
-func newBody(r *record.Record, at time.Time, told bool) *body {
-	b := &body{r: r, a: r.Assessment, at: at, told: told}
+func newBody(r *record.Record, at time.Time) *body {
+	b := &body{r: r, a: r.Assessment, at: at}
 	if b.a.Verdict == "" {
 		b.a.Verdict = criteria.NotAssessed
 	}
@@ -148,14 +149,14 @@ func (b *body) judgedBy() []string {
 }
 
 func (b *body) identity(s *sheet) {
-	if b.told {
+	if s.told {
 		s.y += s.gap * 0.6
 		s.paragraph("This record needs more than two pages; every page names its number and the count.", s.left(), s.quiet(), 1)
 	}
 	s.y += s.gap + 2
 	r := b.r
 	who := []pair{
-		{"monitor", b.serial()},
+		{monitorKey, b.serial()},
 	}
 	if r.Monitor.Name != "" {
 		who = append(who, pair{"name", r.Monitor.Name})
@@ -285,16 +286,23 @@ func (b *body) annexC() string {
 
 func (b *body) charts(s *sheet) {
 	const gutter = 20
-	w := (s.width() - gutter) / 2
 	s.y += s.gap + 4
 	luminance, deviation := ResponseChart(b.a, points(b.r)), DeviationChart(b.a)
-	h := s.chart
+	w, h := (s.width()-gutter)/2, s.chart
 	if luminance.Empty != "" && deviation.Empty != "" {
 		h = s.body * 9
 	}
 	if s.parted && len(s.pages) == 1 {
 		s.turn()
-		h *= 1.25 // a page with little else on it
+	}
+	s.charted = len(s.pages)
+	if s.stacked {
+		for _, c := range []Chart{deviation, luminance} {
+			s.need(h)
+			c.Draw(s, Box{s.left(), s.y, s.width(), h}, s.small)
+			s.y += h + s.gap
+		}
+		return
 	}
 	s.need(h)
 	s.charted = len(s.pages)

@@ -9,6 +9,7 @@ import (
 	"math"
 	"strconv"
 	"strings"
+	"unicode"
 
 	"evenstep/display/record"
 )
@@ -121,7 +122,7 @@ func exact(v float64) string {
 }
 
 // formulaSigns begin what a spreadsheet takes for a formula.
-const formulaSigns = "=+-@"
+const formulaSigns = "=+-@＝＋－＠" // the wide forms as well: some spreadsheets take them
 
 // safe keeps a text cell from being taken for a formula, also where a spreadsheet that expects
 // another separator splits the cell.
@@ -152,7 +153,7 @@ func guarded(s, separators string) string {
 		case begins && strings.ContainsRune(formulaSigns, r):
 			out.WriteByte('\'')
 			begins = false
-		case r != ' ' && r != '"':
+		case !unicode.IsSpace(r) && r != '"':
 			begins = false
 		}
 		out.WriteRune(r)

@@ -35,6 +35,13 @@ var tightness = []tight{
 	{6.8, 6, 4, 96, 2},
 }
 
+// arrangement says how the parts of a report lie to each other.
+type arrangement struct {
+	parted  bool // the charts begin the second page
+	stacked bool // the charts lie one above the other, as wide as the page
+	told    bool // the first page says that there are more than two
+}
+
 // sheet is a document while it is laid out: pages of drawing steps, and where the next block goes.
 // It is a Painter on its current page.
 type sheet struct {
@@ -43,8 +50,7 @@ type sheet struct {
 	paper paper
 	pages []*page
 	y     float64
-	// parted says that the charts begin the second page.
-	parted bool
+	arrangement
 	// slack is the height left free above the foot of the last page.
 	slack float64
 	// charted is the number of the page that the charts stand on.
@@ -175,6 +181,9 @@ func (s *sheet) heading(text string, keep float64) {
 // pair is a word and what it says.
 type pair struct{ key, value string }
 
+// identifying is how many lines a serial number may take: it is not cut to save room.
+const identifying = 5
+
 // pairs sets pairs in a column where set is true, each value on at most most lines, and returns
 // their height.
 func (s *sheet) pairs(list []pair, x, y, w float64, most int, set bool) float64 {
@@ -186,7 +195,11 @@ func (s *sheet) pairs(list []pair, x, y, w float64, most int, set bool) float64 
 	keyWidth = min(keyWidth+8, w*0.45)
 	start := y
 	for _, p := range list {
-		lines := s.lines(p.value, value, w-keyWidth, most)
+		allowed := most
+		if p.key == monitorKey {
+			allowed = identifying
+		}
+		lines := s.lines(p.value, value, w-keyWidth, allowed)
 		if set {
 			s.Text(XY{x, y + value.Size}, shorten(s, p.key, key, keyWidth-4), key)
 			s.setLines(lines, x+keyWidth, y, value)

@@ -57,30 +57,15 @@ func PDF(w io.Writer, r *record.Record, o Options) error {
 }
 
 // fit lays the record out: on one page where that needs no small type, else as loosely as it can be
-// on two, else on as many as it needs. Room that is left on the page of the charts goes to them.
+// on two, else on as many as it needs.
 func fit(r *record.Record, at time.Time, p paper) (*sheet, error) {
 	m, err := newRuler()
 	if err != nil {
 		return nil, err
 	}
-	compose := func(t tight, parted, told bool) *sheet {
-		s := &sheet{ruler: m, tight: t, paper: p, parted: parted}
-		newBody(r, at, told).compose(s)
-		return s
-	}
-	grown := func(s *sheet, told bool) *sheet {
-		const (
-			tallest = 230.0 // taller charts show no more
-			parts   = 1.25  // what a parted sheet adds to the height
-		)
-		if s.charted != len(s.pages) || s.chart >= tallest {
-			return s
-		}
-		t := s.tight
-		t.chart = min(tallest, t.chart+s.slack/parts)
-		if g := compose(t, s.parted, told); len(g.pages) == len(s.pages) {
-			return g
-		}
+	compose := func(t tight, a arrangement) *sheet {
+		s := &sheet{ruler: m, tight: t, paper: p, arrangement: a}
+		newBody(r, at).compose(s)
 		return s
 	}
 	const (
@@ -88,24 +73,41 @@ func fit(r *record.Record, at time.Time, p paper) (*sheet, error) {
 		onePage = 4 // so many kinds of setting are tried for one page
 	)
 	for _, t := range tightness[:onePage] {
-		if s := compose(t, false, false); len(s.pages) == 1 {
-			return grown(s, false), nil
+		if s := compose(t, arrangement{}); len(s.pages) == 1 {
+			return s.grown(compose), nil
 		}
 	}
 	for _, t := range tightness {
-		for _, parted := range []bool{true, false} {
-			if s := compose(t, parted, false); len(s.pages) <= usual {
-				return grown(s, false), nil
+		for _, a := range []arrangement{{parted: true, stacked: true}, {parted: true}, {}} {
+			if s := compose(t, a); len(s.pages) <= usual {
+				return s.grown(compose), nil
 			}
 		}
 	}
-	last := compose(tightness[len(tightness)-1], false, true)
+	last := compose(tightness[len(tightness)-1], arrangement{told: true})
 	for _, t := range tightness {
-		if s := compose(t, false, true); len(s.pages) <= len(last.pages) {
-			return grown(s, true), nil
+		if s := compose(t, arrangement{told: true}); len(s.pages) <= len(last.pages) {
+			return s.grown(compose), nil
 		}
 	}
 	return last, nil
+}
+
+// grown gives the room that is left on the page of the charts to the charts.
+func (s *sheet) grown(compose func(tight, arrangement) *sheet) *sheet {
+	const tallest = 230.0 // points; taller charts show no more
+	if s.charted != len(s.pages) || s.chart >= tallest {
+		return s
+	}
+	t, room := s.tight, s.slack
+	if s.stacked {
+		room /= 2
+	}
+	t.chart = min(tallest, t.chart+room)
+	if g := compose(t, s.arrangement); len(g.pages) == len(s.pages) {
+		return g
+	}
+	return s
 }
 
 // write replays the laid-out pages into a PDF.
