@@ -4,6 +4,7 @@ import (
 	"encoding/json"
 	"fmt"
 	"io"
+	"strings"
 
 	"github.com/spf13/cobra"
 
@@ -108,11 +109,14 @@ func (t *page) limit(l criteria.Limit) {
 		text += ", " + string(l.Basis)
 	}
 	t.paragraph("  ", text)
-	decides, why := l.Deciding()
+	decides, notes := l.Deciding()
 	if decides {
-		why = "decides"
+		notes = "decides"
 	}
-	notes := fmt.Sprintf("%s: %s; %s", l.Confidence, why, l.Source)
+	if !strings.Contains(notes, string(l.Confidence)) {
+		notes = string(l.Confidence) + ": " + notes
+	}
+	notes += "; " + l.Source
 	if l.Section != "" {
 		notes += "; " + l.Section
 	}

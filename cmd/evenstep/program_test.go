@@ -51,3 +51,40 @@ func TestOutputThatFails(t *testing.T) {
 		t.Errorf("stderr %q", errs.String())
 	}
 }
+
+// TestReadmeIsTrue: the output that README.md shows is what the program prints.
+func TestReadmeIsTrue(t *testing.T) {
+	t.Chdir(filepath.Join("..", ".."))
+	readme, err := os.ReadFile("README.md")
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, c := range []struct {
+		args []string
+		from string // where the part that is shown starts
+		to   string // and before what it ends; "": at the end
+	}{
+		{[]string{"assess", "testdata/readings/demo-good.csv"}, "", ""},
+		{[]string{"assess", "testdata/readings/ppp-annex.csv", "--places", "testdata/readings/ppp-uniformity.csv", "--scheme", "nyc-2016", "--class", "primary-diagnostic"}, "uniformity  ", "\nquantity"},
+		{[]string{"criteria", "show", "tg18-2005", "--class", "primary"}, "", "\n  luminance ratio"},
+	} {
+		var out, errs bytes.Buffer
+		p := program{in: strings.NewReader(""), out: &out, err: &errs, now: clock, getenv: os.Getenv, self: os.Executable}
+		if code := p.run(context.Background(), c.args); code != exitMeets {
+			t.Fatalf("%v: exit code %d, %s", c.args, code, errs.String())
+		}
+		shown := out.String()
+		if i := strings.Index(shown, c.from); i > 0 {
+			shown = shown[i:]
+		}
+		if i := strings.Index(shown, c.to); c.to != "" && i > 0 {
+			shown = shown[:i]
+		}
+		if !strings.Contains(string(readme), "$ evenstep "+strings.Join(c.args, " ")+"\n") {
+			t.Errorf("README.md does not show %v", c.args)
+		}
+		if !strings.Contains(string(readme), strings.TrimRight(shown, "\n")) {
+			t.Errorf("%v: README.md does not show what is printed:\n%s", c.args, shown)
+		}
+	}
+}

@@ -28,6 +28,36 @@ func (a Axis) place(v float64) float64 {
 	return (v - a.Min) / (a.Max - a.Min)
 }
 
+// thinned gives the ticks of which at most room stand side by side over the axis: every second, third
+// and so on where they are more, zero among them where it is one.
+func (a Axis) thinned(room float64) []Tick {
+	var named []Tick
+	zero, closest := 0, math.Inf(1)
+	for _, t := range a.Ticks {
+		if t.Text == "" {
+			continue
+		}
+		if n := len(named); n > 0 {
+			closest = min(closest, a.place(t.At)-a.place(named[n-1].At))
+		}
+		if t.At == 0 {
+			zero = len(named)
+		}
+		named = append(named, t)
+	}
+	every := int(math.Ceil(1 / (closest * max(1, room))))
+	if every <= 1 {
+		return a.Ticks
+	}
+	var out []Tick
+	for i, t := range named {
+		if (i-zero)%every == 0 {
+			out = append(out, t)
+		}
+	}
+	return out
+}
+
 // linearAxis covers lo to hi with ticks at round values, about want of them.
 func linearAxis(label string, lo, hi float64, want int) Axis {
 	if hi <= lo {

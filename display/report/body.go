@@ -99,7 +99,7 @@ func (b *body) verdict(s *sheet) {
 	}
 	y := s.y + pad - 2
 	MarkerOf(b.a.Verdict).Draw(s, XY{s.left() + pad + mark/2, y + word.Size*0.68}, mark*0.85, black)
-	s.Text(XY{x, y + word.Size}, capital(string(b.a.Verdict)), word)
+	s.Text(XY{x, y + word.Size}, shorten(s, capital(string(b.a.Verdict)), word, w), word)
 	s.setLines(lines, x, y+leading(word), text)
 	s.y += h
 }
@@ -297,9 +297,11 @@ func (b *body) charts(s *sheet) {
 	}
 	s.charted = len(s.pages)
 	if s.stacked {
+		left, right := deviation.margins(s, s.small)
+		l, r := luminance.margins(s, s.small)
 		for _, c := range []Chart{deviation, luminance} {
 			s.need(h)
-			c.Draw(s, Box{s.left(), s.y, s.width(), h}, s.small)
+			c.draw(s, Box{s.left(), s.y, s.width(), h}, s.small, max(left, l), max(right, r)) // one above the other, JND for JND
 			s.y += h + s.gap
 		}
 		return

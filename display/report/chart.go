@@ -56,6 +56,25 @@ type KeyEntry struct {
 
 // Draw draws the chart within the box, its texts in sizes around size points.
 func (c Chart) Draw(p Painter, box Box, size float64) {
+	left, right := c.margins(p, size)
+	c.draw(p, box, size, left, right)
+}
+
+// margins are the widths that the chart needs left and right of its frame.
+func (c Chart) margins(p Painter, size float64) (left, right float64) {
+	small := Type{Size: size * 0.9}
+	right = size * 0.5
+	for _, t := range c.Y.Ticks {
+		left = max(left, p.TextWidth(t.Text, small))
+	}
+	for _, l := range c.Limits {
+		right = max(right, p.TextWidth(l.Text, small)+size*0.5)
+	}
+	return left + size*0.8, right
+}
+
+// draw is Draw with margins that may be wider than needed, so that frames can be made to line up.
+func (c Chart) draw(p Painter, box Box, size, left, right float64) {
 	title := Type{Face: Bold, Size: size * 1.1, Gray: black}
 	small := Type{Size: size * 0.9, Gray: dark}
 	y := box.Y + title.Size
@@ -76,14 +95,6 @@ func (c Chart) Draw(p Painter, box Box, size float64) {
 	p.Text(XY{box.X, y}, shorten(p, c.Y.Label, small, box.W), small)
 	y += size * 0.8
 
-	left, right := 0.0, size*0.5
-	for _, t := range c.Y.Ticks {
-		left = max(left, p.TextWidth(t.Text, small))
-	}
-	left += size * 0.8
-	for _, l := range c.Limits {
-		right = max(right, p.TextWidth(l.Text, small)+size*0.5)
-	}
 	frame := Box{box.X + left, y, box.W - left - right, box.Y + box.H - y - size*3.1}
 	f := framed{Chart: c, p: p, box: frame, size: size, small: small}
 	f.drawGround()
@@ -159,7 +170,7 @@ func (f framed) drawGround() {
 	}
 	text := f.small
 	text.Align = Right
-	for _, t := range f.Y.Ticks {
+	for _, t := range f.Y.thinned(b.H / (f.small.Size * 1.15)) {
 		y := f.at(XY{f.X.Min, t.At}).Y
 		if t.Text == "" {
 			f.p.Polyline([]XY{{b.X - tick*0.6, y}, {b.X, y}}, Stroke{Width: 0.35, Gray: middle})
@@ -169,7 +180,8 @@ func (f framed) drawGround() {
 		f.p.Text(XY{b.X - tick - f.size*0.25, y + f.small.Size*0.34}, t.Text, text)
 	}
 	text.Align = Centre
-	for _, t := range f.X.Ticks {
+	widest := f.p.TextWidth("0000 ", f.small)
+	for _, t := range f.X.thinned(b.W / widest) {
 		x := f.at(XY{t.At, f.Y.Min}).X
 		f.p.Polyline([]XY{{x, b.Y + b.H}, {x, b.Y + b.H + tick}}, Stroke{Width: 0.5, Gray: middle})
 		f.p.Text(XY{x, b.Y + b.H + tick + f.small.Size*1.05}, t.Text, text)

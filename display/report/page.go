@@ -65,7 +65,7 @@ type paper struct{ width, height float64 }
 const (
 	side = 48.0
 	head = 42.0
-	foot = 52.0
+	foot = 56.0
 )
 
 func (s *sheet) left() float64   { return side }

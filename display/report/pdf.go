@@ -1,6 +1,7 @@
 package report
 
 import (
+	"bytes"
 	"errors"
 	"fmt"
 	"io"
@@ -119,15 +120,20 @@ func write(w io.Writer, s *sheet, r *record.Record, at time.Time) error {
 	pdf.SetCatalogSort(true) // with the two dates: byte for byte the same
 	pdf.SetCreationDate(at)
 	pdf.SetModificationDate(at)
-	pdf.SetProducer(s.printable(r.Program, Regular), true)
-	pdf.SetCreator(s.printable(r.Program, Regular), true)
-	pdf.SetTitle(s.printable(title+" "+r.Monitor.Serial, Regular), true)
+	property := func(text string) string {
+		const most = 120.0 // ems; readers show one line
+		return shorten(s, s.printable(text, Regular), Type{Size: 1}, most)
+	}
+	pdf.SetProducer(property(r.Program), true)
+	pdf.SetCreator(property(r.Program), true)
+	pdf.SetTitle(property(title+" "+r.Monitor.Serial), true)
 	pdf.SetLang("en")
 	pdf.SetMargins(0, 0, 0)
 	pdf.SetAutoPageBreak(false, 0)
 	names := map[Face]string{Regular: "go", Bold: "gobold", Mono: "gomono"}
 	for _, face := range []Face{Regular, Bold, Mono} {
-		pdf.AddUTF8FontFromBytes(names[face], "", typefaces[face])
+		// A copy: fpdf writes into the bytes while it cuts the font down to the glyphs that are used.
+		pdf.AddUTF8FontFromBytes(names[face], "", bytes.Clone(typefaces[face]))
 	}
 	for _, p := range s.pages {
 		pdf.AddPage()

@@ -1,7 +1,6 @@
 package report
 
 import (
-	"fmt"
 	"math"
 	"strings"
 	"testing"
@@ -266,5 +265,3 @@ func darkRecord(t testing.TB) *record.Record {
 func samples(t testing.TB) map[string]*record.Record {
 	return map[string]*record.Record{"usual": sampleRecord(t), "stress": stressRecord(t), "dark": darkRecord(t)}
 }
-
-var _ = fmt.Sprint

@@ -310,15 +310,15 @@ func (b *body) footers(s *sheet) {
 	all := s.pages
 	for i := range all {
 		s.pages = all[:i+1]
-		y := s.bottom() + 14
+		y := s.bottom() + 10
 		s.rule(y, Stroke{Width: 0.4, Gray: middle})
 		number := t
 		number.Align = Right
 		right := s.left() + s.width()
-		s.Text(XY{right, y + 12}, fmt.Sprintf("page %d of %d", i+1, len(all)), number)
-		s.Text(XY{s.left(), y + 12}, shorten(s, s.printable(hash, Mono), mono, s.width()-70), mono)
+		s.Text(XY{right, y + 10.5}, fmt.Sprintf("page %d of %d", i+1, len(all)), number)
+		s.Text(XY{s.left(), y + 10.5}, shorten(s, s.printable(hash, Mono), mono, s.width()-70), mono)
 		program := s.printable(stated(b.r.Program)+" · record edition "+fmt.Sprint(b.r.Version), Regular)
-		s.Text(XY{s.left(), y + 22}, shorten(s, program, t, s.width()-70), t)
+		s.Text(XY{s.left(), y + 19.5}, shorten(s, program, t, s.width()-70), t)
 	}
 	s.pages = all
 }
