@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"os"
 	"path/filepath"
 	"strconv"
 	"strings"
@@ -90,6 +91,9 @@ func oneFile(what string) cobra.PositionalArgs {
 }
 
 func (p program) assess(c *cobra.Command, path string, a *assessFlags) error {
+	if err := a.checkPaths(a.record, path, a.places, a.site); err != nil {
+		return err
+	}
 	file, err := p.openReadings(path)
 	if err != nil {
 		return err
@@ -337,6 +341,43 @@ func (o *outputs) add(c *cobra.Command) {
 	f.StringVar(&o.csv, "csv", "", "write steps and findings to `FILE`")
 	f.StringVar(&o.paper, "paper", "a4", "paper of the PDF, `SIZE`: a4 or letter")
 	f.BoolVar(&o.replace, "replace", false, "write over files that are there")
+}
+
+// checkPaths sees to it, before anything is written, that no output falls on another, on an input, or
+// on a file that is there and may not be replaced.
+func (o *outputs) checkPaths(record string, inputs ...string) error {
+	type named struct{ flag, path string }
+	var seen []named
+	for _, out := range []named{{"record", record}, {"pdf", o.pdf}, {"csv", o.csv}} {
+		if out.path == "" {
+			continue
+		}
+		for _, in := range inputs {
+			if in != "" && same(in, out.path) {
+				return fmt.Errorf("--%s is %s, which is read; expected another file; choose another name", out.flag, out.path)
+			}
+		}
+		for _, other := range seen {
+			if same(other.path, out.path) {
+				return fmt.Errorf("--%s and --%s are both %s; expected two files; choose another name", other.flag, out.flag, out.path)
+			}
+		}
+		if _, err := os.Stat(out.path); err == nil && !o.replace {
+			return alreadyThere(out.path)
+		}
+		seen = append(seen, out)
+	}
+	return nil
+}
+
+// same says whether two paths name one file, which need not be there yet.
+func same(a, b string) bool {
+	if filepath.Clean(a) == filepath.Clean(b) {
+		return true
+	}
+	x, errX := os.Stat(a)
+	y, errY := os.Stat(b)
+	return errX == nil && errY == nil && os.SameFile(x, y)
 }
 
 func (o *outputs) write(r *record.Record) error {

@@ -48,6 +48,10 @@ func openSite(path string) (*criteria.SiteFile, error) {
 	return criteria.ParseSite(filepath.Base(path), text)
 }
 
+func alreadyThere(path string) error {
+	return fmt.Errorf("%s: is there already; expected a new file; choose another name, or give --replace", path)
+}
+
 // writeFile writes a whole file or none.
 func writeFile(path string, text []byte, replace bool) error {
 	err := record.WriteFile(path, text, replace)
@@ -55,7 +59,7 @@ func writeFile(path string, text []byte, replace bool) error {
 	case err == nil:
 		return nil
 	case errors.Is(err, fs.ErrExist):
-		return fmt.Errorf("%s: is there already; expected a new file; choose another name, or give --replace", path)
+		return alreadyThere(path)
 	case errors.Is(err, fs.ErrNotExist):
 		return fmt.Errorf("%s: its folder does not exist; expected one; make it first", path)
 	}
@@ -105,6 +109,9 @@ func (p program) recordCommand() *cobra.Command {
 			}
 			if o.pdf == "" && o.csv == "" {
 				return errors.New("nothing to write; expected --pdf or --csv; name a file")
+			}
+			if err := o.checkPaths("", args[0]); err != nil {
+				return err
 			}
 			return o.write(r)
 		},

@@ -79,6 +79,9 @@ func contrastFigure(r *response.Response) figure {
 	if !ok {
 		return figure{reason: r.Undefined}
 	}
+	if len(at.Points) < 3 {
+		return figure{reason: "two levels cannot deviate: the curve is laid through them; measure levels between"}
+	}
 	f := figure{Estimate: e, formula: ContrastFormula}
 	if !whole {
 		f.formula += ", on the 18-level subset"

@@ -245,6 +245,17 @@ func TestFewLevelsAreProvisional(t *testing.T) {
 	}
 }
 
+// TestTwoLevelsSayNothing: a curve through two levels deviates by 0 whatever the monitor.
+func TestTwoLevelsSayNothing(t *testing.T) {
+	v := Visit{Response: evaluate(t, []float64{1, 400}, response.DarkRoom(), response.Noise{})}
+	a := Assess(v, use(t, "acr-aapm-siim-2012", "diagnostic", nil))
+	for _, f := range a.Findings {
+		if f.Quantity == string(ContrastDeviation) {
+			t.Errorf("judged: %+v", f)
+		}
+	}
+}
+
 // TestRepeatsSettle: the number asked for settles every finding that is open, one fewer does not.
 func TestRepeatsSettle(t *testing.T) {
 	lum := onCurve(t, 1, 420, 0, .013)

@@ -28,6 +28,9 @@ type roomLimit struct {
 func roomRange(v Visit, used *Used) LuxRange {
 	var out LuxRange
 	r := v.Response
+	if sub, ok := r.Eighteen(); ok {
+		r = sub // what depends on room light is judged on it, and a fine series takes long
+	}
 	rd := response.RdDefault
 	out.RdAssumed = true
 	if r.Light.Rd != nil && !r.Light.RdAssumed {

@@ -138,6 +138,10 @@ func (r *Response) gather(in Input) error {
 	for _, l := range order {
 		s := levels[l]
 		v := s.total / float64(s.n)
+		// A reading that holds the ambient light cannot be below it, but for noise.
+		if short := lamb - v; s.inside && known && short > 4*math.Sqrt(in.Noise.variance(lamb)+in.Noise.variance(v)) {
+			return fmt.Errorf("level %d: reads %.4g cd/m2 with ambient light in it, but the ambient light alone is %.4g; expected at least that; correct the ambient luminance, or state that the readings do not hold it", l, v, lamb)
+		}
 		p := Point{Level: l, Luminance: photometry.CdM2(v), Readings: s.n}
 		if known {
 			e := photometry.CdM2(v - lamb)

@@ -51,9 +51,12 @@ func (r *Response) luminance(point int) Estimate {
 // HighestRead is the mean of the readings at the highest level, as the meter gave them.
 func (r *Response) HighestRead() photometry.CdM2 { return photometry.CdM2(r.read[len(r.read)-1]) }
 
+// darkest is the luminance below which a black counts as 0: no luminance meter resolves it.
+const darkest photometry.CdM2 = 1e-6
+
 // Ratio is the luminance ratio r' = L'max/L'min. The reason is not empty where there is none.
 func (r *Response) Ratio() (e Estimate, reason string) {
-	if r.Points[0].Luminance <= 0 {
+	if r.Points[0].Luminance < darkest {
 		return Estimate{}, "L'min reads 0: the ratio has no bound; use a meter that resolves black, or state the ambient light"
 	}
 	last := len(r.Points) - 1
@@ -87,13 +90,13 @@ func (r *Response) AmbientRatio() (e Estimate, reason string) {
 		u := single() * math.Sqrt(slope*slope*sNoise+other)
 		return v, max(0, v-u), v + u
 	}
-	if *r.Points[0].Emitted <= 0 {
+	if *r.Points[0].Emitted < darkest {
 		return Estimate{}, "level 0 emits nothing that the meter resolves: Lamb/Lmin has no bound"
 	}
 	with := func(n int) (float64, float64) {
 		_, lo, hi := figure(r, n)
 		for _, end := range r.ends {
-			if *end.Points[0].Emitted <= 0 {
+			if *end.Points[0].Emitted < darkest {
 				return lo, math.MaxFloat64
 			}
 			_, l, h := figure(end, n)
