@@ -130,12 +130,3 @@ func number(v float64, decimals int) string {
 	}
 	return strings.Replace(s, "-", "−", 1)
 }
-
-// signed is number with a plus sign on what is above 0.
-func signed(v float64, decimals int) string {
-	s := number(v, decimals)
-	if v > 0 && strings.Trim(s, "0.") != "" {
-		return "+" + s
-	}
-	return s
-}

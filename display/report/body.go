@@ -70,7 +70,7 @@ func (b *body) runningHead(s *sheet) {
 	t := s.quiet()
 	code := "code " + b.code()
 	w := s.width() - s.TextWidth(code, t) - 12
-	s.Text(XY{s.left(), s.y + t.Size}, shorten(s, title+" · "+s.printable(b.serial()+" · "+b.when(), t.Face), t, w), t)
+	s.Text(XY{s.left(), s.y + t.Size}, shorten(s, s.printable(title+" · "+b.serial()+" · "+b.when(), t.Face), t, w), t)
 	t.Align = Right
 	s.Text(XY{s.left() + s.width(), s.y + t.Size}, code, t)
 	s.y += leading(t) + 2
@@ -99,7 +99,7 @@ func (b *body) verdict(s *sheet) {
 	}
 	y := s.y + pad - 2
 	MarkerOf(b.a.Verdict).Draw(s, XY{s.left() + pad + mark/2, y + word.Size*0.68}, mark*0.85, black)
-	s.Text(XY{x, y + word.Size}, shorten(s, capital(string(b.a.Verdict)), word, w), word)
+	s.Text(XY{x, y + word.Size}, shorten(s, capital(s.printable(string(b.a.Verdict), word.Face)), word, w), word)
 	s.setLines(lines, x, y+leading(word), text)
 	s.y += h
 }

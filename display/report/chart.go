@@ -210,15 +210,17 @@ func (f framed) drawData() {
 	// Series of every level would run into one blot: signs shrink with their number, to a third.
 	const roomy = 60
 	crowd := max(1.0/3, min(1, roomy/float64(max(1, len(f.Marks)))))
-	ink := Stroke{Width: 0.7 * crowd, Gray: dark}
-	end := f.size * 0.22 * crowd
+	ink, end := Stroke{Width: 0.7 * crowd, Gray: dark}, f.size*0.22
+	if crowd < 1 {
+		ink.Gray, end = middle, 0
+	}
 	for _, bar := range f.Bars {
 		lo, hi := f.at(XY{bar.X, bar.Low}), f.at(XY{bar.X, bar.High})
 		f.p.Polyline([]XY{lo, hi}, ink)
-		if bar.Low >= f.Y.Min {
+		if end > 0 && bar.Low >= f.Y.Min {
 			f.p.Polyline([]XY{{lo.X - end, lo.Y}, {lo.X + end, lo.Y}}, ink)
 		}
-		if bar.High <= f.Y.Max {
+		if end > 0 && bar.High <= f.Y.Max {
 			f.p.Polyline([]XY{{hi.X - end, hi.Y}, {hi.X + end, hi.Y}}, ink)
 		}
 	}

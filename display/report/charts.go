@@ -9,6 +9,10 @@ import (
 	"evenstep/display/response"
 )
 
+// greatestShown is the deviation up to which the axis goes: fifty times the contrast that ought to
+// be. A marker beyond it lies on the edge.
+const greatestShown = 50
+
 const jndAxis = "JND index"
 
 // ResponseChart shows the luminance of every level, with ambient light, at the JND index that the
@@ -100,8 +104,7 @@ func DeviationChart(a criteria.Assessment) Chart {
 	}
 	// Intervals may be so wide at the dark end that no deviation could be seen beside them: they
 	// are shown up to twice the rest, and cut there.
-	const most = 50 // fifty times too much contrast: beyond it the marker lies on the edge
-	reach = min(most, 1.12*max(reach, min(bars, 2*reach)))
+	reach = min(greatestShown, 1.12*max(reach, min(bars, 2*reach)))
 	w := a.Steps[worst]
 	c.Note = fmt.Sprintf("greatest: %s between levels %d and %d", signedPercent(w.Deviation), w.FromLevel, w.ToLevel)
 	c.Key = deviationKey(len(limits) > 0)
@@ -142,7 +145,7 @@ func deviationLimits(findings []criteria.Finding) []float64 {
 	}
 	for _, f := range findings {
 		switch {
-		case f.Quantity != string(criteria.ContrastDeviation) || f.Limit <= 0:
+		case f.Quantity != string(criteria.ContrastDeviation) || f.Limit <= 0 || f.Limit > greatestShown:
 		case f.Verdict == criteria.NotAssessed:
 			other = add(other, f.Limit)
 		default:

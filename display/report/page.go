@@ -123,19 +123,12 @@ func (s *sheet) quiet() Type { return Type{Size: s.small, Gray: dark} }
 // leading is the distance of lines of a type size.
 func leading(t Type) float64 { return t.Size * 1.38 }
 
-// longest is how many characters of one text are set. What is longer is cut visibly; the record
-// holds it whole.
-const longest = 1600
-
 // ties keeps a value and its unit on one line.
 var ties = strings.NewReplacer(" %", string(tie)+"%", " cd/m²", string(tie)+"cd/m²", " lx", string(tie)+"lx")
 
 // lines breaks a text into lines of width w and at most most of them; the last is cut visibly.
 func (s *sheet) lines(text string, t Type, w float64, most int) []string {
-	if runes := []rune(text); len(runes) > longest {
-		text = string(runes[:longest]) + "…"
-	}
-	out := wrap(s, s.printable(ties.Replace(text), t.Face), t, w)
+	out := wrap(s, ties.Replace(s.printable(text, t.Face)), t, w)
 	if len(out) > most {
 		out = out[:most]
 		out[most-1] = shorten(s, out[most-1]+" …", t, w)

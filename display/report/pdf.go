@@ -31,7 +31,7 @@ type Options struct {
 	Paper Paper
 }
 
-// PDF writes the record as PDF 1.4 with its fonts embedded and its charts as vectors. The usual
+// PDF writes the record as PDF (1.3: every reader opens it) with its fonts embedded and its charts as vectors. The usual
 // record takes one or two pages; type and charts grow smaller, to a floor, before a third is begun,
 // and the first page then says so. The same record gives the same bytes: no clock is read, and the
 // dates of the document are those of the visit. Nothing is written where it fails.
@@ -70,8 +70,9 @@ func fit(r *record.Record, at time.Time, p paper) (*sheet, error) {
 		return s
 	}
 	const (
-		usual   = 2
-		onePage = 4 // so many kinds of setting are tried for one page
+		usual      = 2
+		highEnough = 150.0 // points; flatter charts as wide as the page show less than two side by side
+		onePage    = 4     // so many kinds of setting are tried for one page
 	)
 	for _, t := range tightness[:onePage] {
 		if s := compose(t, arrangement{}); len(s.pages) == 1 {
@@ -79,7 +80,7 @@ func fit(r *record.Record, at time.Time, p paper) (*sheet, error) {
 		}
 	}
 	for _, t := range tightness {
-		for _, a := range []arrangement{{parted: true, stacked: true}, {parted: true}, {}} {
+		for _, a := range []arrangement{{parted: true, stacked: t.chart >= highEnough}, {parted: true}, {}} {
 			if s := compose(t, a); len(s.pages) <= usual {
 				return s.grown(compose), nil
 			}

@@ -7,6 +7,7 @@ import (
 	"os/exec"
 	"path/filepath"
 	"strings"
+	"sync"
 	"testing"
 	"time"
 
@@ -73,6 +74,22 @@ func TestSameRecordGivesSameBytes(t *testing.T) {
 	if !bytes.Equal(render(t, sampleRecord(t), Options{}), render(t, sampleRecord(t), Options{A4})) {
 		t.Error("the paper is not A4 where none is asked for")
 	}
+}
+
+// The fonts are shared by all runs, so runs side by side must not touch them. Meant for -race as well.
+func TestRunsSideBySide(t *testing.T) {
+	r := sampleRecord(t)
+	want := render(t, r, Options{})
+	var wait sync.WaitGroup
+	for range 4 {
+		wait.Go(func() {
+			var b bytes.Buffer
+			if err := PDF(&b, r, Options{}); err != nil || !bytes.Equal(b.Bytes(), want) {
+				t.Errorf("another file, or %v", err)
+			}
+		})
+	}
+	wait.Wait()
 }
 
 // qpdf reads the file as a stranger would: structure, streams, cross-reference table.

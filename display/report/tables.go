@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"strings"
+	"unicode/utf8"
 
 	"evenstep/display/criteria"
 	"evenstep/display/record"
@@ -41,7 +42,7 @@ func (b *body) findings(s *sheet) {
 		open = open || unconfirmed(f)
 	}
 	if open {
-		s.paragraph("Limit not confirmed: the document was not read. Such a limit decides once the site has confirmed that it stands there, unless it is for information only.",
+		s.paragraph("Limit not confirmed: the document was not read. Such a limit decides once the site has confirmed that it stands there, unless it is unsure or for information only.",
 			s.left(), s.quiet(), 2)
 	}
 }
@@ -267,8 +268,10 @@ func (b *body) notes(s *sheet) {
 		return
 	}
 	s.heading("Notes", leading(s.plain()))
-	const most = 16
-	s.paragraph(b.r.Visit.Notes, s.left(), s.plain(), most)
+	s.paragraph(b.r.Visit.Notes, s.left(), s.plain(), longest) // cut by its length, not by its lines
+	if utf8.RuneCountInString(b.r.Visit.Notes) > longest {
+		s.paragraph("The notes go on; the record holds them whole.", s.left(), s.quiet(), 1)
+	}
 }
 
 // close sets the caution and the lines for signatures, together, at the foot of the last page.
@@ -325,11 +328,8 @@ func (b *body) footers(s *sheet) {
 
 // code is the short form of the hash, to be read aloud.
 func (b *body) code() string {
-	const digits = 12
-	h := b.r.SHA256
-	if len(h) < digits {
-		return "not sealed"
+	if c := b.r.Code(); c != "" {
+		return c
 	}
-	h = strings.ToUpper(h[:digits])
-	return h[:4] + "-" + h[4:8] + "-" + h[8:]
+	return "not sealed"
 }

@@ -85,10 +85,22 @@ const missing = '□'
 // tie is the space at which no line is broken.
 const tie = '\u00a0'
 
+// longest is how many characters of one text are set. What is longer is cut visibly; the record
+// holds it whole.
+const longest = 1600
+
 // printable composes a text (accents and their letters become one sign), makes white space plain,
 // and puts a visible mark in place of every character that cannot be printed: those that the font
-// lacks, and those that would change the direction or the look of others unseen.
+// lacks, and those that would change the direction or the look of others unseen. What is longer than
+// longest is cut.
 func (m *ruler) printable(text string, face Face) string {
+	n := 0
+	for i := range text {
+		if n++; n > longest {
+			text = text[:i] + "…"
+			break
+		}
+	}
 	out := make([]rune, 0, len(text))
 	for _, r := range norm.NFC.String(text) {
 		switch _, ok := m.advance(face, r); {

@@ -176,7 +176,10 @@ func concise(v float64) string {
 
 // signedPercent writes a fraction as a deviation in per cent, with its sign.
 func signedPercent(v float64) string {
-	s := signed(100*v, 1)
+	s := decimal(100*v, 1)
+	if v > 0 && strings.Trim(s, "0.") != "" {
+		s = "+" + s
+	}
 	return strings.TrimSuffix(s, ".0") + " %"
 }
 
