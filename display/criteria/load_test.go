@@ -6,6 +6,7 @@ import (
 	"path/filepath"
 	"strings"
 	"testing"
+	"time"
 )
 
 const goodScheme = `id = "x-1"
@@ -222,6 +223,49 @@ func TestSiteWord(t *testing.T) {
 		if l.Confirmed != nil || l.Override != nil {
 			t.Errorf("another class took the site's word: %+v", l)
 		}
+	}
+}
+
+// TestAddWord builds the good site file entry by entry and gets the same limits out of it.
+func TestAddWord(t *testing.T) {
+	day := time.Date(2026, 11, 2, 15, 0, 0, 0, time.UTC)
+	text, err := AddWord("site.toml", nil, "North \"field\"\n", Word{
+		Scheme: "tg270-2019", Class: "diagnostic", Quantity: LuminanceMax, Limit: 350,
+		Document: "Report 270 \\ 2019", Page: "14", Person: "p-014", Date: day,
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	text, err = AddWord("site.toml", append(text, "# a note of our own"...), "", Word{
+		Scheme: "tg270-2019", Class: "diagnostic", Quantity: AmbientRatio, Comparison: "<=", Limit: .2,
+		Reason: "two windows", Name: "p-014", Date: day,
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	site, err := ParseSite("site.toml", text)
+	if err != nil {
+		t.Fatalf("%v in:\n%s", err, text)
+	}
+	if site.ID.Site != "North \"field\"\n" || !strings.Contains(string(text), "# a note of our own\n") {
+		t.Errorf("site %q in:\n%s", site.ID.Site, text)
+	}
+	s, err := Find("tg270-2019")
+	if err != nil {
+		t.Fatal(err)
+	}
+	used, err := s.Use("diagnostic", site)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, l := range used.Limits {
+		decides, _ := l.Deciding()
+		if l.Quantity == LuminanceMax && (!decides || l.Confirmed.Document != "Report 270 \\ 2019") || l.Quantity == AmbientRatio && l.Limit != .2 {
+			t.Errorf("%+v", l)
+		}
+	}
+	if _, err := AddWord("site.toml", text, "", Word{Scheme: "tg270-2019", Class: "modality", Quantity: LuminanceMax, Limit: 350, Document: "d", Page: "1", Person: "p", Date: day}); err == nil {
+		t.Error("an unsure limit was confirmed")
 	}
 }
 

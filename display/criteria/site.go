@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"slices"
+	"strconv"
 	"strings"
 	"time"
 )
@@ -168,6 +169,84 @@ func isoDay(v any) (string, error) {
 		return "", errors.New("is missing; expected a day as 2026-11-30; add it")
 	}
 	return "", fmt.Errorf("is %v; expected a day as 2026-11-30; correct it", v)
+}
+
+// Word is what a site says of one limit, for AddWord. Document, Page and Person confirm the limit as
+// it stands; Reason and Name put Limit (and Comparison, where it differs) in its place.
+type Word struct {
+	Scheme, Class  string
+	Quantity       Quantity
+	Formula        string
+	Limit          float64
+	LimitHigh      *float64
+	Comparison     string
+	Document, Page string
+	Person         string
+	Reason, Name   string
+	Date           time.Time
+}
+
+// AddWord adds an entry to the text of a site file and leaves the rest of it as it is. An empty text
+// starts a new file for the site of the given name. It fails, as ParseSite does, where the file would
+// not be sound with the entry in it.
+func AddWord(file string, text []byte, site string, w Word) ([]byte, error) {
+	var b strings.Builder
+	b.Write(text)
+	if len(text) == 0 {
+		fmt.Fprintf(&b, "site = %s\n", quoted(site))
+	} else if text[len(text)-1] != '\n' {
+		b.WriteByte('\n')
+	}
+	table := "confirm"
+	if w.Reason != "" || w.Name != "" {
+		table = "override"
+	}
+	fmt.Fprintf(&b, "\n[[%s]]\n", table)
+	for _, f := range []struct{ key, value string }{
+		{"scheme", w.Scheme},
+		{"class", w.Class},
+		{"quantity", string(w.Quantity)},
+		{"formula", w.Formula},
+		{"comparison", w.Comparison},
+		{"document", w.Document},
+		{"page", w.Page},
+		{"person", w.Person},
+		{"reason", w.Reason},
+		{"name", w.Name},
+	} {
+		if f.value != "" {
+			fmt.Fprintf(&b, "%s = %s\n", f.key, quoted(f.value))
+		}
+	}
+	fmt.Fprintf(&b, "limit = %s\n", strconv.FormatFloat(w.Limit, 'f', -1, 64))
+	if w.LimitHigh != nil {
+		fmt.Fprintf(&b, "limit_high = %s\n", strconv.FormatFloat(*w.LimitHigh, 'f', -1, 64))
+	}
+	fmt.Fprintf(&b, "date = %s\n", w.Date.Format(time.DateOnly))
+	out := []byte(b.String())
+	if _, err := ParseSite(file, out); err != nil {
+		return nil, err
+	}
+	return out, nil
+}
+
+// quoted is a TOML basic string.
+func quoted(s string) string {
+	var b strings.Builder
+	b.WriteByte('"')
+	for _, r := range s {
+		switch {
+		case r == '"' || r == '\\':
+			b.WriteByte('\\')
+			b.WriteRune(r)
+		case r < ' ' || r == 0x7f:
+			fmt.Fprintf(&b, "\\u%04X", r)
+		default:
+			b.WriteRune(r)
+		}
+	}
+	b.WriteByte('"')
+	return b.String()
 }
 
 // Use returns the limits of a class as they are to be judged, with a site's confirmations and own
