@@ -131,6 +131,15 @@ const (
 func Odd(reading LevelReading, taken, earlier []LevelReading, n Noise) Oddity {
 	l := float64(reading.Luminance)
 	if want, ok := Expect(reading.Level, taken, earlier); ok && want > 0 {
+		// What lies far from every reading is only roughly known: there a factor of ten counts, no less.
+		gap, top := math.Inf(1), float64(reading.Level)
+		for _, r := range taken {
+			if r.Level != reading.Level {
+				gap = min(gap, math.Abs(float64(r.Level-reading.Level)))
+			}
+			top = max(top, float64(r.Level))
+		}
+		sure := gap <= top/4 || len(earlier) > 0
 		ratio := (l + float64(n.Floor)) / (float64(want) + float64(n.Floor))
 		const close = 1.35 // a mistyped factor sits this near to it; panels step less between neighbours
 		near := func(factor float64) bool { return ratio > factor/close && ratio < factor*close }
@@ -139,6 +148,10 @@ func Odd(reading LevelReading, taken, earlier []LevelReading, n Noise) Oddity {
 			return TenTimes
 		case near(0.1):
 			return ATenth
+		case !sure:
+			if ratio > 4 || ratio < 1./4 {
+				return FarOff
+			}
 		case near(float64(photometry.FootLambert(1).CdM2())), near(1 / float64(photometry.FootLambert(1).CdM2())):
 			return OtherUnit
 		case ratio > 2.2 || ratio < 1/2.2:
