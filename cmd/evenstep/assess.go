@@ -281,10 +281,7 @@ func (a *assessFlags) document(f *readings.File, in response.Input, places *read
 	doc := &record.Record{
 		Visit:   record.Visit{Kind: a.kind, Time: now.UTC().Format(time.RFC3339), Notes: a.notes},
 		Monitor: record.Monitor{Serial: serial, Name: a.name, Ramp: f.Metadata.Ramp},
-		Meter: record.Meter{
-			ID: meter, CalibratedOn: a.calibrated,
-			Resolution: float64(in.Noise.Resolution), Offset: float64(in.Noise.Offset),
-		},
+		Meter:   record.Meter{ID: meter, CalibratedOn: a.calibrated},
 		File:    &record.SourceFile{Name: filepath.Base(f.Name), SHA256: f.SHA256, Unit: f.Unit},
 		Persons: []record.Person{},
 		Scheme:  used, Assessment: result,
@@ -294,39 +291,18 @@ func (a *assessFlags) document(f *readings.File, in response.Input, places *read
 			doc.Persons = append(doc.Persons, who)
 		}
 	}
-	for _, rd := range in.Readings {
-		one := record.Reading{
-			Level: rd.Level, Luminance: float64(rd.Luminance), Role: string(rd.Role),
-			AmbientIncluded: rd.Ambient == readings.Included,
-		}
-		if !rd.Time.IsZero() {
-			one.Time = rd.Time.Format(time.RFC3339)
-		}
-		doc.Readings = append(doc.Readings, one)
-	}
 	if places != nil {
 		doc.PlacesFile = &record.SourceFile{Name: filepath.Base(places.Name), SHA256: places.SHA256, Unit: places.Unit}
-		for _, pl := range places.Places {
-			doc.Places = append(doc.Places, record.Place{
-				Position: string(pl.Position), Level: pl.Level, Luminance: float64(pl.Luminance), Colour: pair(pl.Colour),
-			})
-		}
 	}
 	if n != nil {
-		doc.Neighbour = &record.Neighbour{Serial: a.neighbourSerial, White: pair(n.White), OwnWhite: pair(n.OwnWhite)}
-		if n.LuminanceMax != nil {
-			l := float64(*n.LuminanceMax)
-			doc.Neighbour.LuminanceMax = &l
-		}
+		doc.Neighbour = &record.Neighbour{Serial: a.neighbourSerial}
 	}
+	var measured []readings.Place
+	if places != nil {
+		measured = places.Places
+	}
+	doc.Take(in, measured, n)
 	return doc, nil
-}
-
-func pair(c *photometry.UV) *[2]float64 {
-	if c == nil {
-		return nil
-	}
-	return &[2]float64{c.U, c.V}
 }
 
 // outputs are the papers that a command writes from a record.

@@ -59,7 +59,9 @@ type Person struct {
 // Meter is the luminance meter and what its papers say.
 type Meter struct {
 	ID           string  `json:"id"`
+	Kind         string  `json:"kind,omitempty"`          // "contact" or "distance"
 	CalibratedOn string  `json:"calibrated_on,omitempty"` // ISO 8601 day; "" where not stated
+	Factor       float64 `json:"factor,omitempty"`        // against the site's reference meter; the readings hold it; 0 or 1: none
 	Resolution   float64 `json:"resolution_cd_m2,omitempty"`
 	Offset       float64 `json:"offset_cd_m2,omitempty"`
 }

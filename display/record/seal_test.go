@@ -25,7 +25,7 @@ var update = flag.Bool("update", false, "write the golden files anew")
 // sample is a visit with every part of a record in it. Invented.
 func sample(t testing.TB) Record {
 	t.Helper()
-	in := response.Input{Bits: 8, Scale: readings.DDL, Light: response.MeasuredAmbient(.2, nil), Noise: response.Noise{Repeatability: .002, Floor: .001}}
+	in := response.Input{Bits: 8, Scale: readings.DDL, Light: response.MeasuredAmbient(.2, nil), Noise: response.Noise{Repeatability: .002, Floor: .001, Resolution: .01}}
 	r := Record{
 		Program: "evenstep test",
 		Visit:   Visit{Kind: "acceptance", Time: "2026-11-30T09:15:00Z", Notes: "Blende zu; Größe ≥ 21\""},
@@ -55,6 +55,29 @@ func sample(t testing.TB) Record {
 	lmax := 455.
 	r.Neighbour = &Neighbour{Serial: "EV-1002", LuminanceMax: &lmax}
 	return r
+}
+
+// TestJudgedAgain: a record holds all that its assessment was made from.
+func TestJudgedAgain(t *testing.T) {
+	sealed, _ := seal(t, sample(t))
+	v, err := sealed.Measured()
+	if err != nil {
+		t.Fatal(err)
+	}
+	again := criteria.Assess(v, sealed.Scheme)
+	// Places and neighbour of the sample were added by hand after it was assessed.
+	again.PairMatch, again.NotAssessed = nil, sealed.Assessment.NotAssessed
+	if d := cmp.Diff(sealed.Assessment, again); d != "" {
+		t.Errorf("judging the record again differs:\n%s", d)
+	}
+	taken := Record{}
+	taken.Take(response.Input{Readings: []readings.Reading{{Level: 3, Luminance: 2, Role: readings.Drift, Ambient: readings.Included}}}, v.Places, v.Neighbour)
+	if d := cmp.Diff(sealed.Places, taken.Places); d != "" {
+		t.Errorf("places:\n%s", d)
+	}
+	if r := taken.Readings[0]; r.Role != "drift" || !r.AmbientIncluded || *taken.Neighbour.LuminanceMax != 455 {
+		t.Errorf("%+v, %+v", r, taken.Neighbour)
+	}
 }
 
 func seal(t testing.TB, r Record) (*Record, []byte) {
