@@ -64,6 +64,7 @@ var arrows = map[string][]string{
 	"display/criteria":   {"display/gsdf", "display/photometry", "display/readings", "display/response"},
 	"display/record":     {"display/criteria", "display/gsdf", "display/photometry", "display/readings", "display/response"},
 	"display/store":      {"display/criteria", "display/gsdf", "display/monitor", "display/photometry", "display/readings", "display/record", "display/response"},
+	"display/demo":       {"display/criteria", "display/gsdf", "display/photometry", "display/readings", "display/record", "display/response", "display/store"},
 	"display/report":     {"display/criteria", "display/gsdf", "display/photometry", "display/readings", "display/record", "display/response", "display/store"},
 	"display/calibrate":  {"display/gsdf", "display/photometry", "display/readings", "display/response", "luts"},
 	"display/inspect":    {"display/gsdf", "display/photometry", "display/response", "luts"},

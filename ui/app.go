@@ -1,0 +1,31 @@
+package ui
+
+import (
+	"fyne.io/fyne/v2"
+
+	"evenstep/display/criteria"
+)
+
+// Start fills the window and brings the bench to the front.
+func Start(app fyne.App, w fyne.Window, d Deps) error {
+	app.Settings().SetTheme(dim{})
+	limits, err := newCriteriaPage(func() *criteria.SiteFile {
+		site, err := siteOf(d.Store)
+		if err != nil {
+			return nil
+		}
+		return site
+	})
+	if err != nil {
+		return err
+	}
+	b := newBench(d)
+	s := newShell(w, b, limits)
+	b.shell, limits.shell = s, s
+	w.Resize(fyne.NewSize(1280, 800))
+	s.open(0)
+	for _, line := range d.Store.Warnings() {
+		s.say("%s", line)
+	}
+	return nil
+}
