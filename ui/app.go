@@ -20,8 +20,9 @@ func Start(app fyne.App, w fyne.Window, d Deps) error {
 		return err
 	}
 	b := newBench(d)
-	s := newShell(w, b, limits)
-	b.shell, limits.shell = s, s
+	reg, recs := newRegisterPage(d), newRecordsPage(d)
+	s := newShell(w, b, reg, recs, limits)
+	b.shell, reg.shell, recs.shell, limits.shell = s, s, s, s
 	w.Resize(fyne.NewSize(1280, 800))
 	s.open(0)
 	for _, line := range d.Store.Warnings() {

@@ -47,7 +47,6 @@ type bench struct {
 	phases  *fyne.Container
 	work    *fyne.Container
 	visit   fyne.CanvasObject
-	sealed  func() // told after a record was sealed
 }
 
 func newBench(d Deps) *bench { return &bench{deps: d, stack: container.NewStack()} }
@@ -398,9 +397,6 @@ func (b *bench) seal() {
 		return
 	}
 	b.draft = store.Draft{}
-	if b.sealed != nil {
-		b.sealed()
-	}
 	b.shell.open(b.shell.current)
 	b.shell.say("Sealed: %s, %s, code %s. Records (Ctrl+3) has the report.", sealed.Monitor.Serial, sealed.Assessment.Verdict, sealed.Code())
 }

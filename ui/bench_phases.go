@@ -2,13 +2,13 @@ package ui
 
 import (
 	"fmt"
+	"os"
+	"path/filepath"
 	"slices"
 	"strings"
 
 	"fyne.io/fyne/v2"
-	"fyne.io/fyne/v2/canvas"
 	"fyne.io/fyne/v2/container"
-	"fyne.io/fyne/v2/dialog"
 	"fyne.io/fyne/v2/layout"
 	"fyne.io/fyne/v2/widget"
 
@@ -18,12 +18,6 @@ import (
 	"evenstep/display/record"
 	"evenstep/display/store"
 )
-
-func setText(o fyne.CanvasObject, s string) {
-	t := o.(*canvas.Text)
-	t.Text = s
-	t.Refresh()
-}
 
 // The plans offered in words.
 const (
@@ -109,6 +103,15 @@ func (b *bench) showSetup() {
 			own.SetText(strings.Trim(fmt.Sprint(evenPlan(b.monitor.Bits, 11)), "[]"))
 		}
 	})
+
+	switch {
+	case slices.Equal(d.Plan, evenPlan(b.monitor.Bits, 18)):
+		plan.SetSelected(planEighteen)
+	case slices.Equal(d.Plan, evenPlan(b.monitor.Bits, 11)):
+		plan.SetSelected(planEleven)
+	default:
+		plan.SetSelected(planOwn)
+	}
 
 	ambient, lux, rd := newField(k), newField(k), newField(k)
 	ambient.SetPlaceHolder("cd/m², display off")
@@ -444,23 +447,19 @@ func (b *bench) showNotes() {
 
 // loadFile takes a readings file into the visit.
 func (b *bench) loadFile() {
-	dialog.NewFileOpen(func(f fyne.URIReadCloser, err error) {
+	b.shell.askPath("Load a readings file", "", "Load", false, func(path string) {
+		f, err := os.Open(path)
 		if err != nil {
 			b.shell.fail(err)
-			return
-		}
-		if f == nil {
 			return
 		}
 		defer f.Close()
-		file, err := readings.Parse(f.URI().Name(), f)
+		file, err := readings.Parse(filepath.Base(path), f)
 		if err == nil {
 			err = b.takeFile(file)
 		}
-		if err != nil {
-			b.shell.fail(err)
-		}
-	}, b.shell.window).Show()
+		b.shell.fail(err)
+	})
 }
 
 // takeFile puts the readings of a file into a visit that has none yet.

@@ -41,16 +41,8 @@ func newChooser(b *bench) *chooser {
 	c.filter.SetPlaceHolder("serial, room, station …")
 	c.filter.OnChanged = func(string) { c.narrow() }
 	c.filter.OnSubmitted = func(string) { c.take() }
-	c.list = newRows(func() int { return len(c.shown) }, func() fyne.CanvasObject {
-		return container.NewVBox(widget.NewLabel(""), small(""))
-	}, func(i int, o fyne.CanvasObject) {
-		box := o.(*fyne.Container)
-		mark := "    "
-		if i == c.marked {
-			mark = "▸ "
-		}
-		box.Objects[0].(*widget.Label).SetText(mark + c.shown[i].text)
-		setText(box.Objects[1], "        "+c.shown[i].detail)
+	c.list = newRows(func() int { return len(c.shown) }, listRow, func(i int, o fyne.CanvasObject) {
+		setRow(o, i == c.marked, c.shown[i].text, c.shown[i].detail, "")
 	}, b.shell.keys)
 	c.list.open = func(i int) { c.marked = i; c.take() }
 	c.list.OnSelected = func(i widget.ListItemID) { c.marked = i; c.list.Refresh() }

@@ -8,6 +8,7 @@ import (
 	"fyne.io/fyne/v2/container"
 	"fyne.io/fyne/v2/driver/desktop"
 	"fyne.io/fyne/v2/layout"
+	"fyne.io/fyne/v2/theme"
 	"fyne.io/fyne/v2/widget"
 
 	"evenstep/display/criteria"
@@ -165,6 +166,43 @@ func prose(s string) *widget.Label {
 	l := widget.NewLabel(s)
 	l.Wrapping = fyne.TextWrapWord
 	return l
+}
+
+// caption is prose of less weight.
+func caption(s string) *widget.Label {
+	l := prose(s)
+	l.SizeName = theme.SizeNameCaptionText
+	l.Importance = widget.LowImportance
+	return l
+}
+
+// listRow is a row of a list: a title that is cut where it has no room, a state that never is, and a
+// line of detail.
+func listRow() fyne.CanvasObject {
+	title, detail := widget.NewLabel(""), widget.NewLabel("")
+	title.Truncation, detail.Truncation = fyne.TextTruncateEllipsis, fyne.TextTruncateEllipsis
+	detail.SizeName, detail.Importance = theme.SizeNameCaptionText, widget.LowImportance
+	state := canvas.NewText("", gray(text))
+	state.TextStyle.Bold = true
+	return container.New(layout.NewCustomPaddedVBoxLayout(-8), container.NewBorder(nil, nil, nil, centred(state), title), detail)
+}
+
+// setRow fills a listRow.
+func setRow(o fyne.CanvasObject, marked bool, title, detail string, v criteria.Verdict) {
+	outer := o.(*fyne.Container)
+	line := outer.Objects[0].(*fyne.Container)
+	mark := "    "
+	if marked {
+		mark = "▸ "
+	}
+	line.Objects[0].(*widget.Label).SetText(mark + title)
+	state := line.Objects[1].(*fyne.Container).Objects[1].(*canvas.Text)
+	state.Text = ""
+	if v != "" {
+		state.Text, state.Color = report.Sign(v)+" "+string(v)+"  ", stateColour(v)
+	}
+	state.Refresh()
+	outer.Objects[1].(*widget.Label).SetText("      " + detail)
 }
 
 // stateText is a verdict as sign and word; the colour only repeats them.

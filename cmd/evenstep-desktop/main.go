@@ -2,27 +2,35 @@
 package main
 
 import (
+	"context"
+	"errors"
 	"flag"
 	"fmt"
+	"io"
+	"log"
 	"os"
+	"runtime/debug"
+	"strings"
 	"time"
 
 	"fyne.io/fyne/v2/app"
 
+	"evenstep/display/demo"
 	"evenstep/display/store"
 	"evenstep/ui"
 )
 
 func main() {
 	register := flag.String("register", "", "the register's `FILE` (default: EVENSTEP_REGISTER, else the user's data folder)")
+	fill := flag.Bool("demo", false, "fill an empty register with an invented site")
 	flag.Parse()
-	if err := run(*register); err != nil {
-		fmt.Fprintf(os.Stderr, "evenstep-desktop: %v\n", err)
+	if err := run(*register, *fill); err != nil {
+		fmt.Fprintf(os.Stderr, "evenstep-desktop: %s\n", strings.Join(strings.Fields(err.Error()), " "))
 		os.Exit(3)
 	}
 }
 
-func run(path string) error {
+func run(path string, fill bool) error {
 	if path == "" {
 		var err error
 		if path, err = store.DefaultPath(os.Getenv); err != nil {
@@ -34,11 +42,35 @@ func run(path string) error {
 		return err
 	}
 	defer s.Close()
+	if fill {
+		o := demo.Options{Seed: 1, Now: time.Now().UTC(), Program: program()}
+		if err := demo.Fill(context.Background(), s, o, nil); err != nil && !errors.Is(err, demo.ErrNotEmpty) {
+			return err
+		}
+	}
+	if os.Getenv("XDG_RUNTIME_DIR") == "" { // a system library complains aloud where it is missing
+		os.Setenv("XDG_RUNTIME_DIR", os.TempDir())
+	}
+	if err := windowTrouble(); err != nil {
+		return fmt.Errorf("no window can be opened: %w; expected a display with OpenGL; the commands do the same without a window (assess, record, criteria, register): run \"evenstep help\"", err)
+	}
+	if os.Getenv("EVENSTEP_LOG") == "" {
+		log.SetOutput(io.Discard) // the toolkit's notes about desktop services that are not there
+	}
 	a := app.NewWithID("evenstep")
 	w := a.NewWindow("Evenstep")
-	if err := ui.Start(a, w, ui.Deps{Store: s, Now: time.Now, Program: "evenstep development"}); err != nil {
+	if err := ui.Start(a, w, ui.Deps{Store: s, Now: time.Now, Program: program()}); err != nil {
 		return err
 	}
 	w.ShowAndRun()
 	return nil
+}
+
+// program is the name and version that records carry.
+func program() string {
+	v := "development"
+	if info, ok := debug.ReadBuildInfo(); ok && info.Main.Version != "" && info.Main.Version != "(devel)" {
+		v = info.Main.Version
+	}
+	return "evenstep-desktop " + v
 }

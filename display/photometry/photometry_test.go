@@ -18,7 +18,7 @@ func near(t *testing.T, what string, got, want, tolerance float64) {
 // last digit.
 func TestUnits(t *testing.T) {
 	// 1 fL is 1/pi cd/ft2, 1 fc is 1 lm/ft2, 1 ft is 0.3048 m (NIST Special Publication 811, 2008,
-	// Appendix B: 3.426259 cd/m2 and 10.76391 lx).
+	// Appendix B: 3.426259 cd/m2 and 10.76391 lx; figures from memory).
 	near(t, "1 fL in cd/m2", float64(FootLambert(1).CdM2()), 3.426259, 5e-7)
 	near(t, "1 fc in lx", float64(FootCandle(1).Lux()), 10.76391, 5e-6)
 	// PS3.14 section 3: 1 footlambert is 3.426 cd/m2.
@@ -195,7 +195,7 @@ func TestCCTRefused(t *testing.T) {
 	}{
 		{"daylight of 25000 K", XY{0.24985367, 0.254799464210944}},
 		{"candle, 1500 K", XY{0.5857, 0.3931}},
-		// Primaries of Rec. ITU-R BT.709, far from any black body.
+		// Primaries of Rec. ITU-R BT.709 (from memory), far from any black body.
 		{"red primary", XY{0.64, 0.33}},
 		{"green primary", XY{0.30, 0.60}},
 		{"blue primary", XY{0.15, 0.06}},

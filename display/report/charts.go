@@ -181,3 +181,30 @@ func noSteps(a criteria.Assessment) string {
 	}
 	return "the record holds no steps"
 }
+
+// CompareChart shows the responses of two visits on the standard function's line of the later one.
+func CompareChart(before, after criteria.Assessment, pointsBefore, pointsAfter []response.Point) Chart {
+	c := ResponseChart(after, pointsAfter)
+	old := ResponseChart(before, pointsBefore)
+	if c.Empty != "" || old.Empty != "" {
+		if c.Empty == "" {
+			c.Empty = old.Empty
+		}
+		return c
+	}
+	c.Title = "Luminance over JND index, both visits"
+	c.Note = ""
+	c.Key = []KeyEntry{{Marker{Square, true}, "earlier"}, {Marker{Circle, false}, "later"}}
+	for i := range c.Marks {
+		c.Marks[i].Marker.Open = false
+	}
+	for _, m := range old.Marks {
+		m.Marker = Marker{Square, true}
+		c.Marks = append(c.Marks, m)
+	}
+	first := min(after.Steps[0].JNDFrom, before.Steps[0].JNDFrom)
+	last := max(after.Steps[len(after.Steps)-1].JNDTo, before.Steps[len(before.Steps)-1].JNDTo)
+	c.X = spanOfJND(first, last)
+	c.Y = logAxis(c.Y.Label, min(after.LuminanceMin, before.LuminanceMin), max(after.LuminanceMax, before.LuminanceMax))
+	return c
+}
