@@ -75,7 +75,7 @@ func grid(n, width, height int) (cols, rows int) {
 
 const (
 	maxDiameters  = 10
-	ownDiameters  = 6
+	ownDiameters  = 5
 	ownDiskSteps  = 6
 	maxDiskSteps  = 12
 	diskPositions = 3

@@ -81,21 +81,11 @@ func geometry(c *canvas, _ int) {
 	size := c.labelSize() * 3 / 4
 	t := c.face(size)
 	long := c.short / 60
+	wide := t.width(c.number(8888)) + 2*long
 	inside := c.bounds().Inset(2*long + t.height)
+	inside.Min.X, inside.Max.X = max(inside.Min.X, wide), min(inside.Max.X, c.Width-wide)
 	net := squares(c, inside, line)
-	for i := range max(c.Width, c.Height) {
-		// Along the longer side, so that a diagonal has no gap.
-		x, y := i, i
-		if c.Width >= c.Height {
-			y = i * (c.Height - 1) / (c.Width - 1)
-		} else {
-			x = i * (c.Width - 1) / (c.Height - 1)
-		}
-		if image.Pt(x, y).In(net) {
-			c.Row(y)[x] = line
-			c.Row(y)[c.Width-1-x] = line
-		}
-	}
+	diagonals(c, net, line)
 	rules(c, t, long, bright)
 	c.frame(c.bounds(), 1, bright)
 }
@@ -103,7 +93,7 @@ func geometry(c *canvas, _ int) {
 // squares draws a net of square meshes in the middle of r and says how far it reaches.
 func squares(c *canvas, r image.Rectangle, v uint16) image.Rectangle {
 	mesh := max(c.short/12/10*10, 10)
-	cols, rows := r.Dx()/mesh, r.Dy()/mesh
+	cols, rows := (r.Dx()-1)/mesh, (r.Dy()-1)/mesh
 	net := middle(r, cols*mesh+1, rows*mesh+1)
 	for i := range cols + 1 {
 		c.rect(image.Rect(net.Min.X+i*mesh, net.Min.Y, net.Min.X+i*mesh+1, net.Max.Y), v)
@@ -112,6 +102,21 @@ func squares(c *canvas, r image.Rectangle, v uint16) image.Rectangle {
 		c.rect(image.Rect(net.Min.X, net.Min.Y+j*mesh, net.Max.X, net.Min.Y+j*mesh+1), v)
 	}
 	return net
+}
+
+// diagonals joins the corners of r, stepping along the longer side so that the lines have no gap.
+func diagonals(c *canvas, r image.Rectangle, v uint16) {
+	w, h := r.Dx()-1, r.Dy()-1
+	for i := range max(w, h) + 1 {
+		x, y := i, i
+		if w >= h {
+			y = (2*i*h + w) / (2 * w)
+		} else {
+			x = (2*i*w + h) / (2 * h)
+		}
+		row := c.Row(r.Min.Y + y)
+		row[r.Min.X+x], row[r.Max.X-1-x] = v, v
+	}
 }
 
 // rules draws a tick every 10 pixels along the edges and a long one with its number every 100 (200, where

@@ -110,11 +110,11 @@ func (s *Spec) check(in *Info) error {
 		return refuse("place %d; expected 1 to %d, or 0 for all; give one of these", s.Place, n)
 	}
 	if s.Diameters != nil {
-		most := maxDiameter(s)
 		if len(s.Diameters) == 0 || len(s.Diameters) > maxDiameters {
 			return refuse("%d diameters; expected 1 to %d; give fewer, or none for the sheet's own",
 				len(s.Diameters), maxDiameters)
 		}
+		most := maxDiameter(s)
 		for _, d := range s.Diameters {
 			if d < 1 || d > most {
 				return refuse("a disk of %d pixels; expected 1 to %d at this size and number of steps; "+

@@ -22,7 +22,7 @@ var furtherSigns = [...]rune{'−', '≤', '≥', '≈', 'Δ', 'Ω', 'µ', '…'
 const (
 	firstSign    = 0x20 // the space
 	latinSigns   = 0x100 - firstSign
-	missingSign  = 0 // the font's own box for a sign that it lacks
+	missingSign  = 0xffff // no character, so that no font has it
 	glyphCount   = latinSigns + len(furtherSigns) + 1
 	missingGlyph = glyphCount - 1
 )
@@ -76,10 +76,25 @@ func newTypeface(size int) (*typeface, error) {
 	return t, nil
 }
 
+// hollow adds the runs of an empty frame, to stand for a sign that the font lacks, and says how far on the
+// next sign begins.
+func (t *typeface) hollow() int {
+	height := int16(t.ascent * 3 / 4)
+	width := max(height/2, 3)
+	for y := -height; y < 0; y++ {
+		if y == -height || y == -1 {
+			t.runs = append(t.runs, run{y, 1, 1 + width})
+			continue
+		}
+		t.runs = append(t.runs, run{y, 1, 2}, run{y, width, 1 + width})
+	}
+	return int(width) + 2
+}
+
 // add thresholds one glyph. Where half a pixel or more is covered it is set; small type would lose its hair
 // lines by that, so there a third is enough.
 func (t *typeface) add(face font.Face, i int, r rune) {
-	const half, third, smallAscent = 0x80, 0x58, 15
+	const half, third, smallAscent = 0x80, 0x58, 12
 	threshold := uint8(half)
 	if t.ascent <= smallAscent {
 		threshold = third
@@ -87,7 +102,10 @@ func (t *typeface) add(face font.Face, i int, r rune) {
 	first := len(t.runs)
 	box, mask, at, advance, ok := face.Glyph(fixed.Point26_6{}, r)
 	alpha, isAlpha := mask.(*image.Alpha)
-	if ok && isAlpha {
+	switch {
+	case !ok:
+		advance = fixed.I(t.hollow())
+	case isAlpha:
 		for y := range box.Dy() {
 			from := -1
 			for x := range box.Dx() + 1 {

@@ -2,20 +2,12 @@ package ui
 
 import (
 	"fyne.io/fyne/v2"
-
-	"evenstep/display/criteria"
 )
 
 // Start fills the window and brings the bench to the front.
 func Start(app fyne.App, w fyne.Window, d Deps) error {
 	app.Settings().SetTheme(dim{})
-	limits, err := newCriteriaPage(func() *criteria.SiteFile {
-		site, err := siteOf(d.Store)
-		if err != nil {
-			return nil
-		}
-		return site
-	})
+	limits, err := newCriteriaPage(d)
 	if err != nil {
 		return err
 	}

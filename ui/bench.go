@@ -9,7 +9,6 @@ import (
 
 	"fyne.io/fyne/v2"
 	"fyne.io/fyne/v2/container"
-	"fyne.io/fyne/v2/dialog"
 	"fyne.io/fyne/v2/driver/desktop"
 	"fyne.io/fyne/v2/widget"
 
@@ -276,13 +275,22 @@ func (b *bench) changed() {
 	b.phases.Refresh()
 	d.Readings = s.taken
 	r, a, err := d.Judge(b.monitor, b.meter, b.used)
-	if err != nil {
-		b.band.waiting(b.waitingFor())
-		b.charts.clear(b.waitingFor())
+	if err == nil {
+		b.band.show(a, "")
+		b.charts.show(a, r)
 		return
 	}
-	b.band.show(a)
-	b.charts.show(a, r)
+	if all, n, ok := s.foreseen(); ok {
+		ahead := *d
+		ahead.Readings = all
+		if r, a, err := ahead.Judge(b.monitor, b.meter, b.used); err == nil {
+			b.band.show(a, fmt.Sprintf("Looking ahead: %d levels are still as the last visit lets expect them.", n))
+			b.charts.show(a, r)
+			return
+		}
+	}
+	b.band.waiting(b.waitingFor())
+	b.charts.soFar(s.levels(), 1<<b.monitor.Bits-1, b.waitingFor())
 }
 
 func (b *bench) phase(label string, done bool, show func()) fyne.CanvasObject {
@@ -303,7 +311,12 @@ func (b *bench) waitingFor() string {
 	if b.draft.Light.Kind == store.LightUnstated {
 		return "The room light is not stated: nothing is judged until it is (Ctrl+E)."
 	}
-	return "The curve and the verdict appear when the lowest and the highest level are read."
+	s := b.levels.series
+	line := fmt.Sprintf("%d of %d levels.", s.done(), len(s.plan))
+	if l, ok := s.has(0); ok {
+		line += fmt.Sprintf(" Lowest level %s cd/m².", short(float64(l)))
+	}
+	return line + " Steps and verdict appear when the lowest and the highest level are read."
 }
 
 // setupLine says in one line what is set up.
@@ -411,16 +424,13 @@ func (b *bench) drop() {
 		return
 	}
 	n := len(b.levels.series.taken)
-	dialog.NewConfirm("Drop this visit", fmt.Sprintf("%d readings will be gone for good.", n), func(yes bool) {
-		if !yes {
-			return
-		}
+	b.shell.confirm("Drop this visit", fmt.Sprintf("%d readings will be gone for good.", n), "Drop it", func() {
 		if err := b.deps.Store.DropDraft(b.draft.ID); err != nil {
 			b.shell.fail(err)
 			return
 		}
 		b.leave()
-	}, b.shell.window).Show()
+	})
 }
 
 // evenPlan is n levels in equal steps over the range of a bit depth.

@@ -272,7 +272,7 @@ type verdictBand struct {
 }
 
 func newVerdictBand() *verdictBand {
-	b := &verdictBand{first: container.NewHBox(), second: widget.NewLabel("")}
+	b := &verdictBand{first: container.New(layout.NewRowWrapLayout()), second: widget.NewLabel("")}
 	b.second.Wrapping = fyne.TextWrapWord
 	b.box = container.NewStack(canvas.NewRectangle(gray(0x16)), container.NewPadded(container.NewVBox(b.first, b.second)))
 	return b
@@ -286,32 +286,33 @@ func (b *verdictBand) waiting(line string) {
 	b.first.Refresh()
 }
 
-func (b *verdictBand) show(a criteria.Assessment) {
+// show puts an assessment in the band; a word before it says what it rests on beside the readings.
+func (b *verdictBand) show(a criteria.Assessment, before string) {
 	b.first.RemoveAll()
 	overall := stateText(a.Verdict)
 	overall.TextSize = 20
 	b.first.Add(overall)
-	open := 0
+	shape := "Nothing wrong found in the shape.   "
 	for _, f := range a.Findings {
 		if f.Verdict == criteria.NotAssessed {
-			open++
 			continue
 		}
-		b.first.Add(space(14, 1))
-		name := small(report.Quantity(f) + "  ")
+		if f.Quantity == string(criteria.ContrastDeviation) && !f.Verdict.Holds() {
+			shape = "No known cause fits the shape.   "
+		}
 		value := canvas.NewText(report.Value(f)+"  ", gray(text))
-		b.first.Add(centred(name))
-		b.first.Add(centred(value))
-		b.first.Add(centred(stateText(f.Verdict)))
-		b.first.Add(centred(small(" " + report.Limit(f))))
+		b.first.Add(container.NewHBox(space(14, 1), centred(small(report.Quantity(f)+"  ")), centred(value), centred(stateText(f.Verdict)), centred(small(" "+report.Limit(f)))))
 	}
 	line := ""
+	if before != "" {
+		line = before + "   "
+	}
 	if n := len(a.NotAssessed); n > 0 {
-		line = fmt.Sprintf("%d not assessed.   ", n)
+		line += fmt.Sprintf("%d not assessed.   ", n)
 	}
 	switch {
 	case len(a.Causes) == 0:
-		line += "Nothing wrong found in the shape.   "
+		line += shape
 	default:
 		for _, c := range a.Causes {
 			line += "Looks like: " + join(c.Causes, ", or ") + " (" + c.Evidence + "): " + c.Advice + ".   "
@@ -354,6 +355,14 @@ func newCharts() *charts {
 func (c *charts) clear(why string) {
 	c.response.show(report.Chart{Title: "Luminance over JND index", Empty: why})
 	c.deviation.show(report.Chart{Title: "Deviation of contrast, step by step", Empty: why})
+}
+
+// soFar shows the readings of a series of which an end is missing.
+func (c *charts) soFar(taken []response.LevelReading, top int, why string) {
+	c.clear(why)
+	if len(taken) > 1 {
+		c.response.show(report.SeriesChart(taken, top))
+	}
 }
 
 func (c *charts) show(a criteria.Assessment, r *response.Response) {

@@ -15,7 +15,6 @@ import (
 func (s *shell) askPath(title, suggested, button string, save bool, then func(path string)) {
 	f := newField(s.keys)
 	f.SetText(suggested)
-	var d *dialog.CustomDialog
 	take := func() {
 		path := strings.TrimSpace(f.Text)
 		if path == "" {
@@ -25,7 +24,7 @@ func (s *shell) askPath(title, suggested, button string, save bool, then func(pa
 		if home, err := os.UserHomeDir(); err == nil && strings.HasPrefix(path, "~/") {
 			path = filepath.Join(home, path[2:])
 		}
-		d.Hide()
+		s.closeDialog()
 		then(path)
 	}
 	f.OnSubmitted = func(string) { take() }
@@ -53,11 +52,8 @@ func (s *shell) askPath(title, suggested, button string, save bool, then func(pa
 	})
 	ok := newPress(button, s.keys, take)
 	ok.Importance = widget.HighImportance
-	cancel := newPress("Cancel", s.keys, func() { d.Hide() })
-	d = dialog.NewCustomWithoutButtons(title, container.NewVBox(f, container.NewHBox(ok, browse, cancel)), s.window)
-	d.Resize(fyne.NewSize(760, 140))
-	d.Show()
-	s.focus(f)
+	cancel := newPress("Leave it", s.keys, s.closeDialog)
+	s.ask(title, container.NewVBox(f, container.NewHBox(ok, browse, cancel)), 760, f)
 }
 
 // papersFolder is where papers go unless the person says otherwise.

@@ -13,7 +13,6 @@ import (
 	"fyne.io/fyne/v2"
 	"fyne.io/fyne/v2/canvas"
 	"fyne.io/fyne/v2/container"
-	"fyne.io/fyne/v2/dialog"
 	"fyne.io/fyne/v2/layout"
 	"fyne.io/fyne/v2/widget"
 
@@ -192,13 +191,15 @@ func recordView(r *record.Record, a criteria.Assessment, resp *response.Response
 	verdict.TextSize = 20
 	top := container.NewVBox(
 		container.NewHBox(heading(r.Monitor.Serial+"   "+day(r.Visit.Time)), space(16, 1), verdict),
-		prose(fmt.Sprintf("%s   %s, edition %s, class %s   code %s", r.Monitor.Name, a.Scheme, a.Edition, a.Class, r.Code())))
+		prose(fmt.Sprintf("%s   %s   code %s", r.Monitor.Name, schemeLine(a), r.Code())))
 	if note != "" {
 		top.Add(prose(note))
 	}
 	table := container.New(layout.NewGridLayout(4))
-	for _, h := range []string{"quantity", "value (95 % interval)", "limit", "verdict"} {
-		table.Add(small(h))
+	if len(a.Findings) > 0 {
+		for _, h := range []string{"quantity", "value (95 % interval)", "limit", "verdict"} {
+			table.Add(small(h))
+		}
 	}
 	for _, f := range a.Findings {
 		table.Add(canvas.NewText(report.Quantity(f), gray(text)))
@@ -226,6 +227,13 @@ func recordView(r *record.Record, a criteria.Assessment, resp *response.Response
 	plots.show(a, resp)
 	both := container.NewGridWithColumns(2, plots.response, plots.deviation)
 	return container.NewBorder(top, nil, nil, nil, container.NewVSplit(container.NewVScroll(body), both))
+}
+
+func schemeLine(a criteria.Assessment) string {
+	if a.Scheme == "" {
+		return "no scheme was asked for, so nothing was judged"
+	}
+	return fmt.Sprintf("%s, edition %s, class %s", a.Scheme, a.Edition, a.Class)
 }
 
 func (p *recordsPage) markOther() {
@@ -383,20 +391,18 @@ func (p *recordsPage) askLimits(title string, then func(*criteria.Used)) {
 		class.SetSelectedIndex(0)
 	}
 	scheme.SetSelectedIndex(0)
-	d := dialog.NewCustomConfirm(title, "Judge", "Cancel", container.NewVBox(labelled("scheme", scheme), labelled("class", class)), func(yes bool) {
-		if !yes {
-			return
-		}
+	judge := newPress("Judge", p.shell.keys, func() {
+		p.shell.closeDialog()
 		used, err := limitsOf(p.deps.Store, scheme.Selected, class.Selected)
 		if err != nil {
 			p.shell.fail(err)
 			return
 		}
 		then(used)
-	}, p.shell.window)
-	d.Resize(fyne.NewSize(420, 200))
-	d.Show()
-	p.shell.focus(scheme)
+	})
+	judge.Importance = widget.HighImportance
+	leave := newPress("Leave it", p.shell.keys, p.shell.closeDialog)
+	p.shell.ask(title, container.NewVBox(labelled("scheme", scheme), labelled("class", class), container.NewHBox(judge, leave)), 460, scheme)
 }
 
 func (p *recordsPage) rejudge() {

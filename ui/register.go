@@ -65,6 +65,7 @@ func (p *registerPage) actions() []action {
 		{"New person", control(fyne.KeyP), "Ctrl+P", func() { p.editPerson(store.Person{}) }},
 		{"Import a list of monitors", control(fyne.KeyI), "Ctrl+I", p.importList},
 		{"Back up the register", control(fyne.KeyB), "Ctrl+B", p.backup},
+		{"Restore a backup", control(fyne.KeyO), "Ctrl+O", p.restore},
 		{"The site's name", control(fyne.KeyG), "Ctrl+G", p.editSite},
 	}
 }
@@ -518,5 +519,21 @@ func (p *registerPage) backup() {
 			return
 		}
 		p.shell.say("backed up to %s", path)
+	})
+}
+
+// restore puts a backup in the register's place, after asking.
+func (p *registerPage) restore() {
+	p.shell.askPath("Restore a backup", "", "Go on", false, func(path string) {
+		text := "Everything in the register is replaced by what the backup holds. What is there now is kept beside it."
+		p.shell.confirm("Restore a backup", text, "Restore", func() {
+			kept, err := p.deps.Store.RestoreFrom(path, p.deps.Now())
+			if err != nil {
+				p.shell.fail(err)
+				return
+			}
+			p.load()
+			p.shell.say("restored; what was there is kept as %s", kept)
+		})
 	})
 }

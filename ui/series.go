@@ -102,6 +102,28 @@ func (s *series) expected() (float64, bool) {
 	return s.shown(l), ok
 }
 
+// foreseen are the readings so far, with those to come as the last visit lets expect them. It reports
+// false where there was no last visit.
+func (s *series) foreseen() ([]readings.Reading, int, bool) {
+	if len(s.earlier) == 0 || len(s.taken) == 0 {
+		return nil, 0, false
+	}
+	out := append([]readings.Reading(nil), s.taken...)
+	n := 0
+	for _, l := range s.plan {
+		if _, ok := s.has(l); ok {
+			continue
+		}
+		v, ok := response.Expect(l, s.levels(), s.earlier)
+		if !ok {
+			return nil, 0, false
+		}
+		out = append(out, readings.Reading{Level: l, Luminance: v, Role: readings.Series, Ambient: s.ambient})
+		n++
+	}
+	return out, n, true
+}
+
 func (s *series) shown(l photometry.CdM2) float64 {
 	if s.unit == footLambert {
 		return float64(l) / float64(photometry.FootLambert(1).CdM2())

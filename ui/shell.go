@@ -38,6 +38,7 @@ type shell struct {
 	page     *fyne.Container
 	news     *widget.Label
 	current  int
+	dialogs  []*dialog.CustomDialog // open ones, the topmost last
 }
 
 func newShell(w fyne.Window, sections ...section) *shell {
@@ -104,11 +105,48 @@ func (s *shell) menu() *fyne.MainMenu {
 
 // keys uses the keys of the whole window; true: used.
 func (s *shell) keys(e *fyne.KeyEvent) bool {
-	if e.Name == fyne.KeyF1 {
-		s.showKeys()
+	switch e.Name {
+	case fyne.KeyF1:
+		if len(s.dialogs) == 0 {
+			s.showKeys()
+		}
+		return true
+	case fyne.KeyEscape:
+		s.closeDialog()
 		return true
 	}
 	return false
+}
+
+// ask opens a dialog. Its widgets must hand on their keys, so that Esc closes it.
+func (s *shell) ask(title string, content fyne.CanvasObject, width float32, focus fyne.Focusable) {
+	d := dialog.NewCustomWithoutButtons(title, content, s.window)
+	s.dialogs = append(s.dialogs, d)
+	d.Resize(fyne.NewSize(width, content.MinSize().Height))
+	d.Show()
+	s.focus(focus)
+}
+
+// closeDialog closes the topmost dialog and gives the keys back to the page.
+func (s *shell) closeDialog() {
+	if n := len(s.dialogs); n > 0 {
+		d := s.dialogs[n-1]
+		s.dialogs = s.dialogs[:n-1]
+		d.Hide()
+	}
+}
+
+// confirm asks before something that cannot be undone. Esc and Enter both leave it; yes takes a Tab.
+func (s *shell) confirm(title, text, yes string, do func()) {
+	no := newPress("Leave it", s.keys, s.closeDialog)
+	ok := newPress(yes, s.keys, func() { s.closeDialog(); do() })
+	s.ask(title, container.NewVBox(prose(text), container.NewHBox(no, ok)), 520, no)
+}
+
+// note shows something to be read.
+func (s *shell) note(title string, content fyne.CanvasObject, width float32) {
+	ok := newPress("Close", s.keys, s.closeDialog)
+	s.ask(title, container.NewVBox(content, container.NewHBox(ok)), width, ok)
 }
 
 func (s *shell) showKeys() {
@@ -126,8 +164,7 @@ func (s *shell) showKeys() {
 		add(a.show, a.label)
 	}
 	grid := widget.NewTextGridFromString(b.String())
-	d := dialog.NewCustom("Keys", "Close", container.NewPadded(grid), s.window)
-	d.Show()
+	s.note("Keys", container.NewPadded(grid), 460)
 }
 
 const cautions = `Evenstep supports a qualified person; it never declares a monitor fit for diagnosis by itself.
@@ -137,7 +174,7 @@ Local rules and licensed practice decide.
 Do not read clinically on a monitor that fails.`
 
 func (s *shell) showCautions() {
-	dialog.NewInformation("Cautions", cautions, s.window).Show()
+	s.note("Cautions", prose(cautions), 760)
 }
 
 // say puts a line of news at the foot of the window.

@@ -176,33 +176,34 @@ func caption(s string) *widget.Label {
 	return l
 }
 
-// listRow is a row of a list: a title that is cut where it has no room, a state that never is, and a
-// line of detail.
+// listRow is a row of a list: a title, and below it a state and a line of detail. What has no room is
+// cut, the state last.
 func listRow() fyne.CanvasObject {
 	title, detail := widget.NewLabel(""), widget.NewLabel("")
 	title.Truncation, detail.Truncation = fyne.TextTruncateEllipsis, fyne.TextTruncateEllipsis
 	detail.SizeName, detail.Importance = theme.SizeNameCaptionText, widget.LowImportance
 	state := canvas.NewText("", gray(text))
-	state.TextStyle.Bold = true
-	return container.New(layout.NewCustomPaddedVBoxLayout(-8), container.NewBorder(nil, nil, nil, centred(state), title), detail)
+	state.TextSize, state.TextStyle.Bold = 12, true
+	return container.New(layout.NewCustomPaddedVBoxLayout(-8), title, container.NewBorder(nil, nil, container.NewHBox(space(22, 1), centred(state)), nil, detail))
 }
 
 // setRow fills a listRow.
 func setRow(o fyne.CanvasObject, marked bool, title, detail string, v criteria.Verdict) {
 	outer := o.(*fyne.Container)
-	line := outer.Objects[0].(*fyne.Container)
 	mark := "    "
 	if marked {
 		mark = "▸ "
 	}
-	line.Objects[0].(*widget.Label).SetText(mark + title)
-	state := line.Objects[1].(*fyne.Container).Objects[1].(*canvas.Text)
+	outer.Objects[0].(*widget.Label).SetText(mark + title)
+	line := outer.Objects[1].(*fyne.Container)
+	line.Objects[0].(*widget.Label).SetText(detail)
+	state := line.Objects[1].(*fyne.Container).Objects[1].(*fyne.Container).Objects[1].(*canvas.Text)
 	state.Text = ""
 	if v != "" {
-		state.Text, state.Color = report.Sign(v)+" "+string(v)+"  ", stateColour(v)
+		state.Text, state.Color = report.Sign(v)+" "+string(v), stateColour(v)
 	}
 	state.Refresh()
-	outer.Objects[1].(*widget.Label).SetText("      " + detail)
+	line.Refresh()
 }
 
 // stateText is a verdict as sign and word; the colour only repeats them.

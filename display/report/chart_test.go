@@ -140,6 +140,35 @@ func TestDeviationChartState(t *testing.T) {
 	})
 }
 
+// TestSeriesChart: what was read so far, in place, and a reading of 0 left out of a log axis.
+func TestSeriesChart(t *testing.T) {
+	c := SeriesChart([]response.LevelReading{{Level: 0, Luminance: 0}, {Level: 15, Luminance: 2}, {Level: 30, Luminance: 4}}, 255)
+	if len(c.Marks) != 2 || c.Marks[1].At != (XY{30, 4}) || c.X.Max != 255 || c.Y.Min > 2 || c.Y.Max < 4 || c.Empty != "" {
+		t.Errorf("%+v", c)
+	}
+	if c := SeriesChart([]response.LevelReading{{Level: 0, Luminance: 0}}, 255); c.Empty == "" {
+		t.Error("a chart of nothing")
+	}
+}
+
+// TestCompareChart: both visits lie in it, told apart by shape.
+func TestCompareChart(t *testing.T) {
+	r := sampleRecord(t)
+	c := CompareChart(r.Assessment, r.Assessment, points(r), points(r))
+	circles, squares := 0, 0
+	for _, m := range c.Marks {
+		switch m.Marker {
+		case Marker{Shape: Circle}:
+			circles++
+		case Marker{Shape: Square, Open: true}:
+			squares++
+		}
+	}
+	if circles == 0 || circles != squares || circles+squares != len(c.Marks) {
+		t.Errorf("%d circles and %d squares of %d markers", circles, squares, len(c.Marks))
+	}
+}
+
 func TestChartsSayWhyTheyAreEmpty(t *testing.T) {
 	for _, c := range []struct {
 		name string

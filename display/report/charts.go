@@ -208,3 +208,24 @@ func CompareChart(before, after criteria.Assessment, pointsBefore, pointsAfter [
 	c.Y = logAxis(c.Y.Label, min(after.LuminanceMin, before.LuminanceMin), max(after.LuminanceMax, before.LuminanceMax))
 	return c
 }
+
+// SeriesChart shows the readings of a series that is being taken, over its levels up to top.
+func SeriesChart(taken []response.LevelReading, top int) Chart {
+	c := Chart{Title: "Luminance over level, so far", Note: fmt.Sprintf("%d levels read", len(taken))}
+	lo, hi := math.Inf(1), 0.0
+	for _, r := range taken {
+		if l := float64(r.Luminance); l > 0 && finite(l) {
+			c.Marks = append(c.Marks, Mark{At: XY{float64(r.Level), l}, Marker: Marker{Circle, true}})
+			lo, hi = min(lo, l), max(hi, l)
+		}
+	}
+	if len(c.Marks) == 0 {
+		c.Empty = "No reading above 0 yet."
+		return c
+	}
+	const least, most = 0.001, 100000
+	c.X = linearAxis("level", 0, float64(top), 6)
+	c.Y = logAxis("luminance as read, cd/m²", min(most/10, max(least, lo)), max(least*10, min(most, hi)))
+	c.Key = []KeyEntry{{Marker{Circle, true}, "read"}}
+	return c
+}

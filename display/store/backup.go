@@ -60,6 +60,24 @@ func syncFile(path string) error {
 	return errors.Join(f.Sync(), f.Close())
 }
 
+// RestoreFrom is Restore for a register that this program has open: it is closed, replaced and opened
+// again. Where that fails the register is open as it was, or the error says that it is not.
+func (s *Store) RestoreFrom(backup string, now time.Time) (kept string, err error) {
+	if err := checkCopy(backup); err != nil {
+		return "", fmt.Errorf("the backup is not sound, nothing was changed: %w", err)
+	}
+	if err := s.Close(); err != nil {
+		return "", fmt.Errorf("%s: %w", s.path, err)
+	}
+	kept, err = Restore(backup, s.path, now)
+	again, errOpen := Open(s.path)
+	if errOpen != nil {
+		return kept, errors.Join(err, errOpen)
+	}
+	s.write, s.read = again.write, again.read
+	return kept, err
+}
+
 // Restore puts a backup in the place of a register that nobody has open. The backup is checked first;
 // the register that was there is kept beside it under a name with the time, which is returned ("" where
 // there was none).

@@ -408,6 +408,30 @@ func TestBackupAndRestore(t *testing.T) {
 	}
 }
 
+// TestRestoreWhileOpen replaces a register that is open and goes on with it.
+func TestRestoreWhileOpen(t *testing.T) {
+	s := newStore(t)
+	must[int64](t)(s.SaveRoom(Room{Name: "before"}))
+	copyPath := filepath.Join(t.TempDir(), "backup.db")
+	if err := s.Backup(copyPath); err != nil {
+		t.Fatal(err)
+	}
+	must[int64](t)(s.SaveRoom(Room{Name: "after"}))
+	if _, err := s.RestoreFrom(filepath.Join(t.TempDir(), "none.db"), noon); err == nil {
+		t.Error("restored from nothing")
+	}
+	if rooms := must[[]Room](t)(s.Rooms()); len(rooms) != 2 {
+		t.Errorf("a failed restore changed the register: %+v", rooms)
+	}
+	if _, err := s.RestoreFrom(copyPath, noon); err != nil {
+		t.Fatal(err)
+	}
+	must[int64](t)(s.SaveRoom(Room{Name: "later"}))
+	if rooms := must[[]Room](t)(s.Rooms()); len(rooms) != 2 || rooms[0].Name != "before" || rooms[1].Name != "later" {
+		t.Errorf("%+v", rooms)
+	}
+}
+
 func TestDefaultPath(t *testing.T) {
 	env := func(kv ...string) func(string) string {
 		return func(k string) string {

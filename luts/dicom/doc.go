@@ -15,8 +15,8 @@
 //
 // Files are taken to be hostile. Every length is checked against what holds it before anything is
 // allocated; nesting ends at 32 levels, a frame at 2^27 pixel cells, a deflated data set at 64 MiB or 32
-// times the file. Besides buffers of 128 KiB, Read allocates at most 8 times the file. Frame allocates 2
+// times the file. Besides buffers of 128 KiB, Read allocates at most 12 times the file. Frame allocates 2
 // bytes for each pixel cell, and the compressed frame itself, and refuses a frame with more cells than its
 // bytes can hold: that is at most 2 times the file without compression (deflated: of the inflated data
-// set), 68 times for RLE, 20 times for JPEG lossless and 800 times for JPEG baseline.
+// set), 132 times for RLE, 20 times for JPEG lossless and 800 times for JPEG baseline.
 package dicom

@@ -292,17 +292,22 @@ func (m *Image) startsByMarker(p *parser, e element) error {
 	if m.pixels.coding == runLength {
 		return p.damaged(e.header, tagPixels, "%d fragments for %d frames; expected one for each", len(m.pixels.fragments), m.Frames)
 	}
+	found := 0
+	m.pixels.starts = make([]int32, m.Frames)
 	for k, f := range m.pixels.fragments {
 		b, err := p.bytes(f.off, int(min(f.length, 2)))
 		if err != nil {
 			return err
 		}
 		if len(b) == 2 && b[0] == 0xFF && b[1] == markerSOI {
-			m.pixels.starts = append(m.pixels.starts, int32(k))
+			if found < m.Frames {
+				m.pixels.starts[found] = int32(k)
+			}
+			found++
 		}
 	}
-	if len(m.pixels.starts) != m.Frames || m.pixels.starts[0] != 0 {
-		return p.damaged(e.header, tagPixels, "%s in the fragments for %s; expected one for each", plural(len(m.pixels.starts), "JPEG picture", "JPEG pictures"), plural(m.Frames, "frame", "frames"))
+	if found != m.Frames || m.pixels.starts[0] != 0 {
+		return p.damaged(e.header, tagPixels, "%s in the fragments for %s; expected one for each, the first at the start", plural(found, "JPEG picture", "JPEG pictures"), plural(m.Frames, "frame", "frames"))
 	}
 	return nil
 }

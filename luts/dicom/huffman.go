@@ -69,8 +69,8 @@ func newCodes(counts, values []byte) (*codes, bool) {
 	return c, true
 }
 
-// bits reads the entropy-coded data of a scan from the most significant bit on (F.2.2.5).
-type bits struct {
+// bitReader reads the entropy-coded data of a scan from the most significant bit on (F.2.2.5).
+type bitReader struct {
 	data []byte
 	pos  int
 	acc  uint64 // the low n bits are still to be read
@@ -78,7 +78,7 @@ type bits struct {
 }
 
 // fill brings at least 32 bits into the accumulator, unless a marker or the end stands before them.
-func (b *bits) fill() {
+func (b *bitReader) fill() {
 	for b.n <= 56 && b.pos < len(b.data) {
 		c := b.data[b.pos]
 		if c == 0xFF {
@@ -94,7 +94,7 @@ func (b *bits) fill() {
 }
 
 // peek gives the next k bits, 1 to 16, with zeros where the data have ended.
-func (b *bits) peek(k int) uint32 {
+func (b *bitReader) peek(k int) uint32 {
 	if b.n < k {
 		return uint32(b.acc<<(k-b.n)) & (1<<k - 1)
 	}
@@ -102,7 +102,7 @@ func (b *bits) peek(k int) uint32 {
 }
 
 // difference decodes one difference (H.1.2.2, F.2.2.1); false where the data end or hold no code.
-func (b *bits) difference(c *codes) (uint16, bool) {
+func (b *bitReader) difference(c *codes) (uint16, bool) {
 	if b.n < 32 {
 		b.fill()
 	}
@@ -138,7 +138,7 @@ func (b *bits) difference(c *codes) (uint16, bool) {
 }
 
 // restart passes the padding and the restart marker that must come next.
-func (b *bits) restart(marker byte) bool {
+func (b *bitReader) restart(marker byte) bool {
 	if b.n >= 8 || b.pos+2 > len(b.data) {
 		return false
 	}

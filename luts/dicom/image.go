@@ -7,7 +7,7 @@ import (
 
 const (
 	maxCells   = 1 << 27 // pixel cells of a frame; the largest radiographs have 2^25
-	maxWindows = 256     // windows that are kept; real images have a handful
+	maxWindows = 256     // windows, and VOI LUTs, that are kept; real images have a handful
 )
 
 // Image is a grayscale image, one frame or several. Its pixels stay in the file.

@@ -59,10 +59,10 @@ func isFrameHeader(marker byte) bool {
 
 // frameHeader is T.81 B.2.2 of a single component.
 type frameHeader struct {
-	found              bool
-	precision          int
-	columns, rows      int
-	component, quantum byte
+	found         bool
+	precision     int
+	columns, rows int
+	component     byte
 }
 
 func (h *frameHeader) read(at int, body []byte) error {

@@ -71,7 +71,7 @@ func (j *lossless) segment(marker byte, at int, body []byte) error {
 
 // decode fills the plane (H.1.2, H.2).
 func (j *lossless) decode(plane []uint16) error {
-	b := bits{data: j.scan}
+	b := bitReader{data: j.scan}
 	table := j.tables[j.table]
 	n := j.columns
 	perRestart := j.interval / n // in rows
@@ -109,7 +109,7 @@ func (j *lossless) decode(plane []uint16) error {
 
 // decodeRow decodes one row; start is the prediction of its first cell, above the row before it or nil
 // where only the left neighbour counts (H.1.2.1). Arithmetic is modulo 2^16.
-func (j *lossless) decodeRow(b *bits, table *codes, row, above []uint16, start uint16) bool {
+func (j *lossless) decodeRow(b *bitReader, table *codes, row, above []uint16, start uint16) bool {
 	d, ok := b.difference(table)
 	if !ok {
 		return false

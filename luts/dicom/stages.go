@@ -228,7 +228,7 @@ func (m *Image) readWindows(p *parser, d dataset, s *Stages) error {
 	if err != nil {
 		return err
 	}
-	texts := strings.Split(text, `\`)
+	texts := strings.SplitN(text, `\`, maxWindows+1)
 	if len(centers) != len(widths) {
 		s.notice("%s and %s of windows; only pairs are kept", plural(len(centers), "center", "centers"), plural(len(widths), "width", "widths"))
 	}
@@ -263,13 +263,21 @@ func (m *Image) readVOILUTs(p *parser, d dataset, s *Stages) error {
 		low, high = -float64(int(1)<<(m.BitsStored-1)), float64(int(1)<<(m.BitsStored-1)-1)
 	}
 	signed := s.ModalityLUT == nil && min(s.Slope*low, s.Slope*high)+s.Intercept < 0
-	return p.sequence(e, func(it item) error {
+	more := false
+	err := p.sequence(e, func(it item) error {
+		if more = len(s.VOILUTs) == maxWindows; more {
+			return nil
+		}
 		l, _, err := m.readLUT(p, it, signed, s)
 		if err == nil {
 			s.VOILUTs = append(s.VOILUTs, l)
 		}
 		return err
 	})
+	if more {
+		s.notice("more than %d VOI LUTs; the rest is left out", maxWindows)
+	}
+	return err
 }
 
 func isLUT(t tag) bool {

@@ -28,7 +28,8 @@ func (p *parser) start() (int64, transfer, []string, error) {
 	off := int64(132)
 	if !Sniff(head) {
 		off = 0
-		if head[0] != 0x02 && head[0] != 0x08 && head[1] != 0x08 || head[0] != 0 && head[1] != 0 {
+		little := (head[0] == 0x02 || head[0] == 0x08) && head[1] == 0
+		if big := head[0] == 0 && head[1] == 0x08; !little && !big {
 			return 0, none, nil, p.unsupported(0, 0, notDICOM)
 		}
 		notices = append(notices, "the file has no preamble")

@@ -69,8 +69,7 @@ const (
 	tagShape           tag = 0x20500020
 	tagShared          tag = 0x52009229
 	tagPerFrame        tag = 0x52009230
-	tagOverlayData     tag = 0x60003000 // group 60xx
-	tagOverlayPosition tag = 0x60000102 // group 60xx
+	tagOverlayData     tag = 0x60003000 // groups 6000 to 60FE
 	tagLongOffsets     tag = 0x7FE00001
 	tagFloatPixels     tag = 0x7FE00008
 	tagDoublePixels    tag = 0x7FE00009
