@@ -23,7 +23,11 @@ type picture struct {
 	img   *image.RGBA
 	scale float64 // pixels a unit
 	pen   vector.Rasterizer
+	path  [][]corner // closed outlines that are filled together
 }
+
+// corner is a place in pixels.
+type corner struct{ x, y float64 }
 
 var _ report.Painter = (*picture)(nil)
 
@@ -38,35 +42,54 @@ func ink(g report.Gray) color.Color {
 	return gray(uint8(math.Round(text - float64(g)*(text-ground))))
 }
 
+// fill fills the outlines gathered in path. Only the pixels around them are touched: the rasterizer works
+// through all that it is given, and most shapes of a chart are small.
 func (p *picture) fill(g report.Gray) {
-	p.pen.Draw(p.img, p.img.Bounds(), image.NewUniform(ink(g)), image.Point{})
-}
-
-func (p *picture) reset() {
-	b := p.img.Bounds()
-	p.pen.Reset(b.Dx(), b.Dy())
-	p.pen.DrawOp = draw.Over
+	x0, y0, x1, y1 := math.Inf(1), math.Inf(1), math.Inf(-1), math.Inf(-1)
+	for _, outline := range p.path {
+		for _, c := range outline {
+			x0, y0, x1, y1 = min(x0, c.x), min(y0, c.y), max(x1, c.x), max(y1, c.y)
+		}
+	}
+	if !(x0 <= x1 && y0 <= y1) || math.IsInf(x1-x0, 0) || math.IsInf(y1-y0, 0) {
+		p.path = p.path[:0]
+		return
+	}
+	edge := func(v float64) int { return int(min(max(v, -1e6), 1e6)) }
+	box := image.Rect(edge(math.Floor(x0)), edge(math.Floor(y0)), edge(math.Ceil(x1))+1, edge(math.Ceil(y1))+1).Intersect(p.img.Bounds())
+	if !box.Empty() {
+		p.pen.Reset(box.Dx(), box.Dy())
+		p.pen.DrawOp = draw.Over
+		left, top := float64(box.Min.X), float64(box.Min.Y)
+		for _, outline := range p.path {
+			for i, c := range outline {
+				x, y := float32(c.x-left), float32(c.y-top)
+				if i == 0 {
+					p.pen.MoveTo(x, y)
+				} else {
+					p.pen.LineTo(x, y)
+				}
+			}
+			p.pen.ClosePath()
+		}
+		p.pen.Draw(p.img, box, image.NewUniform(ink(g)), image.Point{})
+	}
+	p.path = p.path[:0]
 }
 
 // Polygon implements report.Painter.
 func (p *picture) Polygon(at []report.XY, g report.Gray) {
-	p.reset()
+	outline := make([]corner, len(at))
 	for i, a := range at {
-		x, y := float32(a.X*p.scale), float32(a.Y*p.scale)
-		if i == 0 {
-			p.pen.MoveTo(x, y)
-		} else {
-			p.pen.LineTo(x, y)
-		}
+		outline[i] = corner{a.X * p.scale, a.Y * p.scale}
 	}
-	p.pen.ClosePath()
+	p.path = append(p.path, outline)
 	p.fill(g)
 }
 
 // Polyline implements report.Painter.
 func (p *picture) Polyline(at []report.XY, s report.Stroke) {
 	width := max(1, s.Width*p.scale)
-	p.reset()
 	for i := 1; i < len(at); i++ {
 		a, b := at[i-1], at[i]
 		if s.Dash <= 0 {
@@ -105,11 +128,7 @@ func (p *picture) segment(a, b report.XY, width float64) {
 		return
 	}
 	nx, ny := -(by-ay)/length*width/2, (bx-ax)/length*width/2
-	p.pen.MoveTo(float32(ax+nx), float32(ay+ny))
-	p.pen.LineTo(float32(ax-nx), float32(ay-ny))
-	p.pen.LineTo(float32(bx-nx), float32(by-ny))
-	p.pen.LineTo(float32(bx+nx), float32(by+ny))
-	p.pen.ClosePath()
+	p.path = append(p.path, []corner{{ax + nx, ay + ny}, {ax - nx, ay - ny}, {bx - nx, by - ny}, {bx + nx, by + ny}})
 }
 
 // Text implements report.Painter.

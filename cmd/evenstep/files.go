@@ -117,7 +117,7 @@ func (p program) recordCommand() *cobra.Command {
 		},
 	}
 	o.add(export)
-	c.AddCommand(verify, export)
+	c.AddCommand(verify, export, p.rejudgeCommand())
 	return c
 }
 
