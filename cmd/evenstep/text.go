@@ -93,6 +93,14 @@ func (a *assessFlags) print(w io.Writer, f *readings.File, r *record.Record) err
 	verdict := report.Sign(s.Verdict) + " " + string(s.Verdict)
 	if s.Scheme == "" {
 		verdict += ": no scheme was asked for"
+	} else {
+		decided := 0
+		for _, f := range s.Findings {
+			if f.Verdict != criteria.NotAssessed {
+				decided++
+			}
+		}
+		verdict += fmt.Sprintf(": %d of %d limits judged", decided, len(r.Scheme.Limits))
 	}
 	t.entry("verdict", verdict)
 	if s.Scheme != "" {

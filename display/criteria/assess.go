@@ -33,6 +33,15 @@ func Assess(v Visit, used *Used) Assessment {
 	return a
 }
 
+// Outcome is the verdict that Assess comes to, without the figures that it takes time to find.
+func Outcome(v Visit, used *Used) Verdict {
+	a := Assessment{Verdict: NotAssessed}
+	if used != nil {
+		a.judgeAll(v, used)
+	}
+	return a.Verdict
+}
+
 func hints(used *Used) response.Hints {
 	var h response.Hints
 	if used == nil {

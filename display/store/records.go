@@ -215,7 +215,7 @@ func rejudge(id int64, text []byte, used *criteria.Used) Rejudged {
 		out.Err = err
 		return out
 	}
-	out.After = criteria.Assess(v, used).Verdict
+	out.After = criteria.Outcome(v, used)
 	return out
 }
 
