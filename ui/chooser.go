@@ -102,8 +102,8 @@ func (c *chooser) narrow() {
 		m := c.titles[d.MonitorID]
 		if fits(m) {
 			c.shown = append(c.shown, choiceRow{
-				text:   "go on: " + m.Title() + "   no. " + m.Serial,
-				detail: fmt.Sprintf("begun %s, %d readings kept", d.Started.Local().Format("2 Jan 2006 15:04"), len(d.Readings)),
+				text:   "go on: " + m.Title(),
+				detail: "no. " + m.Serial + "   " + fmt.Sprintf("begun %s, %d readings kept", d.Started.Local().Format("2 Jan 2006 15:04"), len(d.Readings)),
 				draft:  &c.drafts[i], monitor: m,
 			})
 		}
@@ -114,7 +114,7 @@ func (c *chooser) narrow() {
 			if m.Scheme != "" {
 				detail = m.Scheme + ", " + m.Class
 			}
-			c.shown = append(c.shown, choiceRow{text: m.Title() + "   no. " + m.Serial, detail: detail + "   " + m.Model, monitor: m})
+			c.shown = append(c.shown, choiceRow{text: m.Title(), detail: "no. " + m.Serial + "   " + detail + "   " + m.Model, monitor: m})
 		}
 	}
 	c.marked = 0

@@ -162,7 +162,7 @@ func (p *criteriaPage) open() {
 	} else {
 		why = "It does not decide: " + why + "."
 	}
-	os := []fyne.CanvasObject{heading(limitText(l)), prose(why), prose("How it is known: " + report.Confidence(string(l.Confidence)) + ".\nSource: " + l.Source + ".")}
+	os := []fyne.CanvasObject{headline(limitText(l)), prose(why), prose("How it is known: " + report.Confidence(string(l.Confidence)) + ".\nSource: " + l.Source + ".")}
 	for _, line := range []struct{ label, text string }{{"Section", l.Section}, {"Formula", l.Formula}, {"Luminance meant", string(l.Basis)}, {"Note", l.Note}} {
 		if line.text != "" {
 			os = append(os, prose(line.label+": "+line.text))
@@ -264,7 +264,7 @@ func (p *criteriaPage) ask(l criteria.Limit, text string, done func(), fields ..
 	}
 	keep := newPress("Keep", p.shell.keys, done)
 	keep.Importance = widget.HighImportance
-	p.put(heading(limitText(l)), prose(text), grid, container.NewHBox(keep, newPress("Leave it", p.shell.keys, p.open)))
+	p.put(headline(limitText(l)), prose(text), grid, container.NewHBox(keep, newPress("Leave it", p.shell.keys, p.open)))
 	p.shell.focus(fields[0].field)
 }
 

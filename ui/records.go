@@ -190,7 +190,7 @@ func recordView(r *record.Record, a criteria.Assessment, resp *response.Response
 	verdict := stateText(a.Verdict)
 	verdict.TextSize = 20
 	top := container.NewVBox(
-		container.NewHBox(heading(r.Monitor.Serial+"   "+day(r.Visit.Time)), space(16, 1), verdict),
+		container.NewBorder(nil, nil, nil, centred(verdict), headline(r.Monitor.Serial+"   "+day(r.Visit.Time))),
 		prose(fmt.Sprintf("%s   %s   code %s", r.Monitor.Name, schemeLine(a), r.Code())))
 	if note != "" {
 		top.Add(prose(note))
@@ -286,9 +286,9 @@ func (p *recordsPage) compare() {
 	}
 	plot := newChartView(fyne.NewSize(320, 220))
 	plot.show(report.CompareChart(a.Assessment, b.Assessment, va.Response.Points, vb.Response.Points))
-	title := heading(a.Monitor.Serial)
+	title := headline(a.Monitor.Serial)
 	if a.Monitor.Serial != b.Monitor.Serial {
-		title = heading(a.Monitor.Serial + " and " + b.Monitor.Serial)
+		title = headline(a.Monitor.Serial + " and " + b.Monitor.Serial)
 	}
 	p.put(container.NewBorder(container.NewVBox(title, small(fmt.Sprintf("%d figures changed by more than the uncertainty", n))), nil, nil, nil,
 		container.NewVSplit(container.NewVScroll(table), plot)))

@@ -130,7 +130,7 @@ func (p *registerPage) load() {
 	latest, err := st.Latest()
 	p.shell.fail(err)
 	for _, m := range monitors {
-		r := siteRow{text: m.Title() + "   no. " + m.Serial, detail: m.Class + "   " + m.Model, edit: func() { p.editMonitor(m) }}
+		r := siteRow{text: m.Title(), detail: "no. " + m.Serial + "   " + m.Class + "   " + m.Model, edit: func() { p.editMonitor(m) }}
 		if e, ok := latest[m.ID]; ok {
 			r.verdict = e.Verdict
 			r.detail += "   last visit " + day(e.Time)
@@ -239,7 +239,7 @@ func (e *editor) show(save func() error) {
 	e.save = save
 	keep := newPress("Keep", e.page.shell.keys, e.done)
 	keep.Importance = widget.HighImportance
-	e.page.put(container.NewVScroll(container.NewVBox(heading(e.title), e.grid, container.NewHBox(keep))))
+	e.page.put(container.NewVScroll(container.NewVBox(headline(e.title), e.grid, container.NewHBox(keep))))
 	e.page.shell.focus(e.first)
 }
 

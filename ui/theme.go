@@ -85,6 +85,8 @@ func (dim) Size(name fyne.ThemeSizeName) float32 {
 	switch name {
 	case theme.SizeNameText:
 		return 14
+	case theme.SizeNameSubHeadingText:
+		return 17
 	case theme.SizeNameInputBorder:
 		return 2
 	case theme.SizeNameInnerPadding:

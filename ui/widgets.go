@@ -154,6 +154,13 @@ func heading(s string) *canvas.Text {
 	return t
 }
 
+// headline is a heading whose text may be long: what has no room is cut.
+func headline(s string) *widget.Label {
+	l := widget.NewLabelWithStyle(s, fyne.TextAlignLeading, fyne.TextStyle{Bold: true})
+	l.SizeName, l.Truncation = theme.SizeNameSubHeadingText, fyne.TextTruncateEllipsis
+	return l
+}
+
 // small is a line of less weight.
 func small(s string) *canvas.Text {
 	t := canvas.NewText(s, gray(muted))
