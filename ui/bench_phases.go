@@ -49,15 +49,17 @@ func (b *bench) showSetup() {
 
 	kind := newChoice(record.Kinds(), k, nil)
 	kind.SetSelected(d.Kind)
-	person := widget.NewSelectEntry(personIDs)
+	person, reviewer := newField(k), newField(k)
+	for _, f := range []*field{person, reviewer} {
+		f.SetPlaceHolder(strings.Join(personIDs, ", "))
+	}
 	person.SetText(d.Person)
-	reviewer := widget.NewSelectEntry(personIDs)
 	reviewer.SetText(d.Reviewer)
 	meter := newChoice(meterNames, k, nil)
 	if b.meter != nil {
 		meter.SetSelected(b.meter.Name)
 	}
-	holds := widget.NewCheck("the meter sees the room light with the screen's", nil)
+	holds := newTick("the meter sees the room light with the screen's", k)
 	holds.SetChecked(d.ReadingsHoldAmbient)
 	meter.OnChanged = func(string) {
 		if i := meter.SelectedIndex(); i >= 0 {
@@ -174,7 +176,7 @@ func (b *bench) showSetup() {
 	}
 	ok := newPress("Done, read the levels", k, done)
 	ok.Importance = widget.HighImportance
-	for _, f := range []*field{own, ambient, lux, rd} {
+	for _, f := range []*field{person, reviewer, own, ambient, lux, rd} {
 		f.OnSubmitted = func(string) { done() }
 	}
 	form := container.New(layout.NewGridLayout(2),
@@ -431,8 +433,8 @@ func (b *bench) neighbourSerial() string {
 }
 
 func (b *bench) showNotes() {
-	e := widget.NewMultiLineEntry()
-	e.Wrapping = fyne.TextWrapWord
+	e := newField(b.shell.keys)
+	e.MultiLine, e.Wrapping = true, fyne.TextWrapWord
 	e.SetText(b.draft.Notes)
 	ok := newPress("Keep the notes", b.shell.keys, func() {
 		b.draft.Notes = e.Text

@@ -1,6 +1,7 @@
 package ui
 
 import (
+	"context"
 	"fmt"
 	"strings"
 
@@ -9,6 +10,7 @@ import (
 	"fyne.io/fyne/v2/widget"
 
 	"evenstep/display/criteria"
+	"evenstep/display/demo"
 	"evenstep/display/photometry"
 	"evenstep/display/response"
 	"evenstep/display/store"
@@ -20,6 +22,7 @@ type chooser struct {
 	filter *field
 	list   *rows
 	empty  *widget.Label
+	demo   *press
 	box    fyne.CanvasObject
 
 	drafts   []store.Draft
@@ -47,8 +50,9 @@ func newChooser(b *bench) *chooser {
 	c.list.open = func(i int) { c.marked = i; c.take() }
 	c.list.OnSelected = func(i widget.ListItemID) { c.marked = i; c.list.Refresh() }
 	c.empty = prose("")
+	c.demo = newPress("Fill it with an invented site", b.shell.keys, c.fillDemo)
 	c.box = container.NewBorder(
-		container.NewVBox(heading("Which monitor is on the bench?"), c.filter, small("type to narrow the list, arrows mark, Enter begins the visit"), c.empty),
+		container.NewVBox(heading("Which monitor is on the bench?"), c.filter, small("type to narrow the list, arrows mark, Enter begins the visit"), c.empty, container.NewHBox(c.demo)),
 		nil, nil, nil, c.list)
 	return c
 }
@@ -118,10 +122,12 @@ func (c *chooser) narrow() {
 		}
 	}
 	c.marked = 0
+	c.demo.Hide()
 	switch {
 	case len(c.monitors) == 0:
-		c.empty.SetText("The register has no monitors yet. Register (Ctrl+2) adds them one by one or from a spreadsheet; the command \"evenstep demo\" fills an empty register with an invented site.")
+		c.empty.SetText("The register has no monitors yet. Register (Ctrl+2) adds them one by one or from a spreadsheet; to look around, it can be filled with an invented site.")
 		c.empty.Show()
+		c.demo.Show()
 	case len(c.shown) == 0:
 		c.empty.SetText("Nothing fits these words.")
 		c.empty.Show()
@@ -129,6 +135,21 @@ func (c *chooser) narrow() {
 		c.empty.Hide()
 	}
 	c.list.Refresh()
+}
+
+// fillDemo fills an empty register with an invented site.
+func (c *chooser) fillDemo() {
+	d := c.bench.deps
+	c.demo.Disable()
+	go func() {
+		err := demo.Fill(context.Background(), d.Store, demo.Options{Seed: 1, Now: d.Now().UTC(), Program: d.Program}, nil)
+		fyne.Do(func() {
+			c.demo.Enable()
+			c.bench.shell.fail(err)
+			c.load()
+			c.bench.shell.focus(c.filter)
+		})
+	}()
 }
 
 // take begins or goes on with the visit that is marked.

@@ -59,13 +59,13 @@ func (p *recordsPage) entered() {
 func (p *recordsPage) actions() []action {
 	return []action{
 		{"Open the marked record", nil, "Enter", p.open},
-		{"Mark as the earlier one to compare", control(fyne.KeyB), "Ctrl+B", p.markOther},
-		{"Compare with the marked one", control(fyne.KeyK), "Ctrl+K", p.compare},
-		{"Write the PDF", control(fyne.KeyS), "Ctrl+S", func() { p.export("pdf") }},
-		{"Write the CSV", control(fyne.KeyT), "Ctrl+T", func() { p.export("csv") }},
-		{"Write the sealed JSON", control(fyne.KeyJ), "Ctrl+J", func() { p.export("json") }},
-		{"Judge by other limits", control(fyne.KeyG), "Ctrl+G", p.rejudge},
-		{"Judge the whole register by other limits", control(fyne.KeyW), "Ctrl+W", p.rejudgeAll},
+		{"Mark as the earlier one", control(fyne.KeyB), "Ctrl+B", p.markOther},
+		{"Compare with it", control(fyne.KeyK), "Ctrl+K", p.compare},
+		{"PDF", control(fyne.KeyS), "Ctrl+S", func() { p.export("pdf") }},
+		{"CSV", control(fyne.KeyT), "Ctrl+T", func() { p.export("csv") }},
+		{"JSON", control(fyne.KeyJ), "Ctrl+J", func() { p.export("json") }},
+		{"Other limits", control(fyne.KeyG), "Ctrl+G", p.rejudge},
+		{"Whole register by other limits", control(fyne.KeyW), "Ctrl+W", p.rejudgeAll},
 	}
 }
 
@@ -79,7 +79,7 @@ func (p *recordsPage) build() {
 	p.list.open = func(i int) { p.marked = i; p.open() }
 	p.list.OnSelected = func(i widget.ListItemID) { p.marked = i; p.list.Refresh(); p.open() }
 	p.detail = container.NewStack(prose("Enter opens a record."))
-	left := container.NewBorder(container.NewVBox(heading("Sealed records"), p.filter, p.count), nil, nil, nil, p.list)
+	left := container.NewBorder(container.NewVBox(heading("Sealed records"), p.filter, p.count), actionBar(p.shell.keys, p.actions()[1:]), nil, nil, p.list)
 	split := container.NewHSplit(left, container.NewPadded(p.detail))
 	split.Offset = .38
 	p.box = split

@@ -63,10 +63,10 @@ func (p *registerPage) actions() []action {
 		{"New station", control(fyne.KeyT), "Ctrl+T", func() { p.editStation(store.Station{}) }},
 		{"New meter", control(fyne.KeyE), "Ctrl+E", func() { p.editMeter(store.Meter{Kind: store.Contact, GainK: 2, Factor: 1}) }},
 		{"New person", control(fyne.KeyP), "Ctrl+P", func() { p.editPerson(store.Person{}) }},
-		{"Import a list of monitors", control(fyne.KeyI), "Ctrl+I", p.importList},
-		{"Back up the register", control(fyne.KeyB), "Ctrl+B", p.backup},
-		{"Restore a backup", control(fyne.KeyO), "Ctrl+O", p.restore},
-		{"The site's name", control(fyne.KeyG), "Ctrl+G", p.editSite},
+		{"Import a list", control(fyne.KeyI), "Ctrl+I", p.importList},
+		{"Back up", control(fyne.KeyB), "Ctrl+B", p.backup},
+		{"Restore", control(fyne.KeyO), "Ctrl+O", p.restore},
+		{"Site's name", control(fyne.KeyG), "Ctrl+G", p.editSite},
 	}
 }
 
@@ -83,11 +83,11 @@ func (p *registerPage) build() {
 	p.list.OnSelected = func(i widget.ListItemID) { p.marked = i; p.list.Refresh(); p.open() }
 	p.empty = prose("")
 	p.form = container.NewStack()
-	left := container.NewBorder(container.NewVBox(heading("The site"), p.filter, p.empty), nil, nil, nil, p.list)
+	left := container.NewBorder(container.NewVBox(heading("The site"), p.filter, p.empty), actionBar(p.shell.keys, p.actions()[1:]), nil, nil, p.list)
 	split := container.NewHSplit(left, container.NewPadded(p.form))
 	split.Offset = .45
 	p.box = split
-	p.put(prose("Enter opens what is marked. Ctrl+N makes a new monitor, Ctrl+R a room, Ctrl+T a station, Ctrl+E a meter, Ctrl+P a person; Ctrl+I takes a list from a spreadsheet.\n\nRoles of persons are self-declared: this register lies on one computer and knows nobody's password."))
+	p.put(prose("Enter opens what is marked.\n\nRoles of persons are self-declared: this register lies on one computer and knows nobody's password."))
 }
 
 func (p *registerPage) put(o fyne.CanvasObject) {

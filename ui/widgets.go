@@ -101,6 +101,36 @@ func (c *choice) TypedKey(e *fyne.KeyEvent) {
 	}
 }
 
+// tick is a box to tick.
+type tick struct {
+	widget.Check
+	keys keys
+}
+
+func newTick(label string, k keys) *tick {
+	c := &tick{keys: k}
+	c.Text = label
+	c.ExtendBaseWidget(c)
+	return c
+}
+
+func (c *tick) TypedKey(e *fyne.KeyEvent) {
+	if c.keys == nil || !c.keys(e) {
+		c.Check.TypedKey(e)
+	}
+}
+
+// actionBar shows what a page can do as buttons, each with its key.
+func actionBar(k keys, actions []action) fyne.CanvasObject {
+	bar := container.New(layout.NewRowWrapLayout())
+	for _, a := range actions {
+		b := newPress(a.label+"  "+a.show, k, a.do)
+		b.Importance = widget.LowImportance
+		bar.Add(b)
+	}
+	return bar
+}
+
 // rows is a list in which Enter opens what is marked, and Home, End and the page keys move.
 type rows struct {
 	widget.List

@@ -79,7 +79,7 @@ type Draft struct {
 	MonitorID int64
 	Started   time.Time
 	Head
-	Readings []readings.Reading // as the meter gave them, times its factor
+	Readings []readings.Reading // as the meter gave them
 }
 
 // Input is what the response is computed from.
@@ -89,12 +89,20 @@ func (d Draft) Input(m Monitor, meter *Meter) (response.Input, error) {
 		return response.Input{}, err
 	}
 	in := response.Input{Bits: m.Bits, Scale: readings.DDL, Light: light, Readings: append([]readings.Reading(nil), d.Readings...)}
+	factor := photometry.CdM2(1) // what the meter gives goes over to the site's reference meter here, the ambient luminance too
+	if meter != nil && meter.Factor > 0 {
+		factor = photometry.CdM2(meter.Factor)
+	}
+	if d.Light.Kind == LightMeasured && factor != 1 {
+		in.Light = response.MeasuredAmbient(d.Light.Ambient*factor, light.Illuminance)
+	}
 	in.Noise = response.Noise{Repeatability: response.RepeatabilityDefault, Floor: response.FloorDefault, Assumed: true}
 	if meter != nil {
 		in.Noise = meter.Noise()
 	}
 	// What the head says of ambient light holds for the whole visit: it may be stated after the readings.
 	for i := range in.Readings {
+		in.Readings[i].Luminance *= factor
 		in.Readings[i].Ambient = readings.Excluded
 		if d.ReadingsHoldAmbient || d.Light.Kind == LightInside {
 			in.Readings[i].Ambient = readings.Included

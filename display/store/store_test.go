@@ -201,6 +201,29 @@ func TestNothingIsJudgedWithoutLight(t *testing.T) {
 	}
 }
 
+// TestMeterFactor: readings and ambient luminance go over to the reference meter, and the record says by what.
+func TestMeterFactor(t *testing.T) {
+	d := Draft{Head: Head{Kind: "check", Light: Light{Kind: LightMeasured, Ambient: .2}}}
+	for i, l := range []photometry.CdM2{1, 30, 100, 300} {
+		d.Readings = append(d.Readings, readings.Reading{Level: i * 85, Luminance: l, Role: readings.Series, Time: noon})
+	}
+	meter := &Meter{Name: "m", Kind: Contact, Factor: 1.02}
+	_, a, err := d.Judge(testMonitor(), meter, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if want := 1.02 * 300.2; a.LuminanceMax < want-1e-9 || a.LuminanceMax > want+1e-9 { // rounding
+		t.Errorf("L'max %v, want %v", a.LuminanceMax, want)
+	}
+	if got := *a.Ambient; got < .204-1e-12 || got > .204+1e-12 {
+		t.Errorf("ambient %v, want 0.204", got)
+	}
+	doc := must[record.Record](t)(d.Document(testMonitor(), meter, nil, "evenstep test", noon))
+	if doc.Meter.Factor != 1.02 || doc.Readings[3].Luminance != 306 {
+		t.Errorf("%+v, %+v", doc.Meter, doc.Readings)
+	}
+}
+
 func TestSearchAndRejudge(t *testing.T) {
 	s := newStore(t)
 	m := testMonitor()
