@@ -10,6 +10,7 @@ import (
 	"fyne.io/fyne/v2"
 	"fyne.io/fyne/v2/container"
 	"fyne.io/fyne/v2/driver/desktop"
+	"fyne.io/fyne/v2/layout"
 	"fyne.io/fyne/v2/widget"
 
 	"evenstep/display/criteria"
@@ -24,6 +25,8 @@ type Deps struct {
 	Store   *store.Store
 	Now     func() time.Time
 	Program string // name and version, for records
+	// Width and Height are the pixels of the screen; 0: not known.
+	Width, Height int
 }
 
 // bench is the page on which a visit is measured.
@@ -235,11 +238,11 @@ func (b *bench) build() {
 	b.title.Truncation = fyne.TextTruncateEllipsis
 	b.setup = widget.NewLabel("")
 	b.setup.Wrapping = fyne.TextWrapWord
-	b.phases = container.NewHBox()
+	b.phases = container.New(layout.NewRowWrapLayout())
 	b.work = container.NewStack()
 	split := container.NewHSplit(container.NewBorder(b.phases, nil, nil, nil, container.NewPadded(b.work)), container.NewPadded(b.charts.box))
-	split.Offset = .52
-	top := container.NewVBox(b.title, b.setup, rule())
+	split.Offset = .58
+	top := container.NewVBox(container.NewBorder(nil, nil, nil, newPress("Seal the record", b.shell.keys, b.seal), b.title), b.setup, rule())
 	b.visit = container.NewBorder(top, b.band.box, nil, nil, split)
 }
 
@@ -270,7 +273,6 @@ func (b *bench) changed() {
 	b.phases.Objects = []fyne.CanvasObject{
 		b.phase("Setup", b.setupDone(), b.showSetup), b.phase(fmt.Sprintf("Levels %d of %d", s.done(), len(s.plan)), s.done() == len(s.plan), b.showLevels),
 		b.phase("Places", len(d.Places) > 0, b.showPlaces), b.phase("Neighbour", d.Neighbour != nil, b.showNeighbour), b.phase("Notes", d.Notes != "", b.showNotes),
-		space(20, 1), newPress("Seal the record", b.shell.keys, b.seal),
 	}
 	b.phases.Refresh()
 	d.Readings = s.taken

@@ -54,9 +54,9 @@ func newLevelsView(sh *shell, changed func()) *levelsView {
 	v.count = canvas.NewText("", gray(muted))
 	v.count.TextSize = 15
 	v.unit = canvas.NewText("", gray(muted))
-	v.unit.TextSize = 22
+	v.unit.TextSize = 18
 	v.expected = canvas.NewText("", gray(muted))
-	v.expected.TextSize = 18
+	v.expected.TextSize = 15
 	v.question = widget.NewLabel("")
 	v.question.Wrapping = fyne.TextWrapWord
 	v.field = newField(v.keys)
@@ -64,11 +64,11 @@ func newLevelsView(sh *shell, changed func()) *levelsView {
 	v.field.runes = v.runes
 	v.field.paste = v.paste
 	v.strip = container.New(layout.NewGridWrapLayout(fyne.NewSize(84, 46)))
-	entry := container.New(fixedWidth(260), container.NewThemeOverride(v.field, large{}))
+	entry := container.New(fixedWidth(190), container.NewThemeOverride(v.field, large{}))
 	top := container.NewHBox(v.level, space(18, 1), centred(v.count))
-	line := container.NewHBox(entry, space(6, 1), centred(v.unit), space(18, 1), centred(v.expected))
+	line := container.New(layout.NewRowWrapLayout(), entry, container.NewHBox(space(2, 56), centred(v.unit), space(10, 1), centred(v.expected)))
 	v.box = container.NewBorder(
-		container.NewVBox(top, line, v.question, small("Enter takes it   Backspace in the empty field: one back   r again   d drift   u unit   arrows: another level")),
+		container.NewVBox(top, line, v.question, caption("Enter takes it, Backspace goes back, r again, d drift, u unit, arrows: another level")),
 		nil, nil, nil, container.NewVScroll(v.strip))
 	return v
 }
@@ -125,6 +125,11 @@ func (v *levelsView) refresh() {
 		v.level.Text = "all levels read"
 	}
 	v.question.SetText(s.question)
+	if s.question == "" {
+		v.question.Hide() // an empty line takes room that a small window does not have
+	} else {
+		v.question.Show()
+	}
 	for _, t := range []*canvas.Text{v.level, v.count, v.unit, v.expected} {
 		t.Refresh()
 	}
@@ -272,9 +277,12 @@ type verdictBand struct {
 }
 
 func newVerdictBand() *verdictBand {
-	b := &verdictBand{first: container.New(layout.NewRowWrapLayout()), second: widget.NewLabel("")}
-	b.second.Wrapping = fyne.TextWrapWord
-	b.box = container.NewStack(canvas.NewRectangle(gray(0x16)), container.NewPadded(container.NewVBox(b.first, b.second)))
+	b := &verdictBand{first: container.New(layout.NewRowWrapLayout()), second: prose("")}
+	b.second.SizeName = theme.SizeNameCaptionText
+	// Three lines, and more by scrolling: the work above must keep its room in a small window.
+	lines := container.NewVScroll(b.second)
+	lines.SetMinSize(fyne.NewSize(100, 62))
+	b.box = container.NewStack(canvas.NewRectangle(gray(0x16)), container.NewPadded(container.NewVBox(b.first, lines)))
 	return b
 }
 
@@ -290,7 +298,7 @@ func (b *verdictBand) waiting(line string) {
 func (b *verdictBand) show(a criteria.Assessment, before string) {
 	b.first.RemoveAll()
 	overall := stateText(a.Verdict)
-	overall.TextSize = 20
+	overall.TextSize = 18
 	b.first.Add(overall)
 	shape := "Nothing wrong found in the shape.   "
 	for _, f := range a.Findings {
@@ -346,7 +354,7 @@ type charts struct {
 }
 
 func newCharts() *charts {
-	c := &charts{response: newChartView(fyne.NewSize(320, 200)), deviation: newChartView(fyne.NewSize(320, 200))}
+	c := &charts{response: newChartView(fyne.NewSize(220, 90)), deviation: newChartView(fyne.NewSize(220, 90))}
 	c.box = container.NewGridWithRows(2, c.response, c.deviation)
 	c.clear("The curve appears when the lowest and the highest level are read.")
 	return c

@@ -195,19 +195,22 @@ func recordView(r *record.Record, a criteria.Assessment, resp *response.Response
 	if note != "" {
 		top.Add(prose(note))
 	}
-	table := container.New(layout.NewGridLayout(4))
+	table := container.NewHBox()
 	if len(a.Findings) > 0 {
-		for _, h := range []string{"quantity", "value (95 % interval)", "limit", "verdict"} {
-			table.Add(small(h))
+		var columns [4]*fyne.Container
+		for i, h := range []string{"verdict", "quantity", "value (95 % interval)", "limit"} {
+			columns[i] = container.NewVBox(small(h))
+			table.Add(columns[i])
+			table.Add(space(10, 1))
 		}
-	}
-	for _, f := range a.Findings {
-		table.Add(canvas.NewText(report.Quantity(f), gray(text)))
-		value := report.Value(f)
-		_, unit, _ := strings.Cut(value, " ")
-		table.Add(canvas.NewText(value+"  ("+strings.TrimSpace(strings.TrimSuffix(report.Interval(f), unit))+")", gray(text)))
-		table.Add(canvas.NewText(report.Limit(f), gray(text)))
-		table.Add(stateText(f.Verdict))
+		for _, f := range a.Findings {
+			value := report.Value(f)
+			_, unit, _ := strings.Cut(value, " ")
+			value += "  (" + strings.TrimSpace(strings.TrimSuffix(report.Interval(f), unit)) + ")"
+			for i, cell := range []*canvas.Text{stateText(f.Verdict), plainText(report.Quantity(f)), plainText(value), plainText(report.Limit(f))} {
+				columns[i].Add(cell)
+			}
+		}
 	}
 	body := container.NewVBox(table)
 	for _, c := range a.Causes {
@@ -226,8 +229,10 @@ func recordView(r *record.Record, a criteria.Assessment, resp *response.Response
 	plots := newCharts()
 	plots.show(a, resp)
 	both := container.NewGridWithColumns(2, plots.response, plots.deviation)
-	return container.NewBorder(top, nil, nil, nil, container.NewVSplit(container.NewVScroll(body), both))
+	return container.NewBorder(top, nil, nil, nil, container.NewVSplit(container.NewScroll(body), both))
 }
+
+func plainText(s string) *canvas.Text { return canvas.NewText(s, gray(text)) }
 
 func schemeLine(a criteria.Assessment) string {
 	if a.Scheme == "" {
@@ -284,14 +289,14 @@ func (p *recordsPage) compare() {
 		table.Add(canvas.NewText(figure(c.After.Value, c.Unit), gray(text)))
 		table.Add(canvas.NewText(say, gray(text)))
 	}
-	plot := newChartView(fyne.NewSize(320, 220))
+	plot := newChartView(fyne.NewSize(220, 120))
 	plot.show(report.CompareChart(a.Assessment, b.Assessment, va.Response.Points, vb.Response.Points))
 	title := headline(a.Monitor.Serial)
 	if a.Monitor.Serial != b.Monitor.Serial {
 		title = headline(a.Monitor.Serial + " and " + b.Monitor.Serial)
 	}
 	p.put(container.NewBorder(container.NewVBox(title, small(fmt.Sprintf("%d figures changed by more than the uncertainty", n))), nil, nil, nil,
-		container.NewVSplit(container.NewVScroll(table), plot)))
+		container.NewVSplit(container.NewScroll(table), plot)))
 }
 
 // figure writes a compared value with its unit.

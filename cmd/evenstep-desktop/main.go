@@ -51,7 +51,8 @@ func run(path string, fill bool) error {
 	if os.Getenv("XDG_RUNTIME_DIR") == "" { // a system library complains aloud where it is missing
 		os.Setenv("XDG_RUNTIME_DIR", os.TempDir())
 	}
-	if err := windowTrouble(); err != nil {
+	width, height, err := tryWindow()
+	if err != nil {
 		return fmt.Errorf("no window can be opened: %w; expected a display with OpenGL; the commands do the same without a window (assess, record, criteria, register): run \"evenstep help\"", err)
 	}
 	if os.Getenv("EVENSTEP_LOG") == "" {
@@ -59,7 +60,8 @@ func run(path string, fill bool) error {
 	}
 	a := app.NewWithID("evenstep")
 	w := a.NewWindow("Evenstep")
-	if err := ui.Start(a, w, ui.Deps{Store: s, Now: time.Now, Program: program()}); err != nil {
+	d := ui.Deps{Store: s, Now: time.Now, Program: program(), Width: width, Height: height}
+	if err := ui.Start(a, w, d); err != nil {
 		return err
 	}
 	w.ShowAndRun()

@@ -6,16 +6,17 @@ import (
 	"github.com/go-gl/glfw/v3.4/glfw"
 )
 
-// windowTrouble says why no window can be opened; nil where one can. The toolkit would go on without a
-// window, or stop with a trace of its insides, so a hidden window is tried first.
-func windowTrouble() (err error) {
+// tryWindow says why no window can be opened; nil where one can, with the pixels that the screen has for
+// it. The toolkit would go on without a window, or stop with a trace of its insides, so a hidden window
+// is tried first.
+func tryWindow() (width, height int, err error) {
 	defer func() {
 		if r := recover(); r != nil { // the binding panics where the system's library fails in an odd way
 			err = fmt.Errorf("%v", r)
 		}
 	}()
 	if err := glfw.Init(); err != nil {
-		return err
+		return 0, 0, err
 	}
 	defer glfw.Terminate()
 	glfw.WindowHint(glfw.Visible, glfw.False)
@@ -23,8 +24,11 @@ func windowTrouble() (err error) {
 	glfw.WindowHint(glfw.ContextVersionMinor, 0)
 	w, err := glfw.CreateWindow(16, 16, "Evenstep", nil, nil)
 	if err != nil {
-		return err
+		return 0, 0, err
 	}
 	w.Destroy()
-	return nil
+	if m := glfw.GetPrimaryMonitor(); m != nil {
+		_, _, width, height = m.GetWorkarea()
+	}
+	return width, height, nil
 }
