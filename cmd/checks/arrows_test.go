@@ -26,6 +26,7 @@ var arrows = map[string][]string{
 	"display/inspect":    {"display/gsdf", "display/photometry", "display/response", "luts"},
 	"display/meter":      {"display/photometry"},
 	"display/monitor":    {"display/photometry"},
+	"display/sheet":      {"luts", "luts/dicom", "patterns"},
 	"display/screen":     {"display/photometry"},
 	"luts":               nil,
 	"patterns":           nil,

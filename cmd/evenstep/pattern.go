@@ -1,11 +1,9 @@
 package main
 
 import (
-	"bytes"
 	"crypto/rand"
 	"errors"
 	"fmt"
-	"path/filepath"
 	"strconv"
 	"strings"
 
@@ -13,7 +11,7 @@ import (
 
 	"evenstep/display/gsdf"
 	"evenstep/display/response"
-	"evenstep/luts/dicom"
+	"evenstep/display/sheet"
 	"evenstep/patterns"
 )
 
@@ -104,23 +102,14 @@ object is seen depends on more than JND.`,
 }
 
 func (p program) draw(name string, d *drawFlags) error {
-	kind := strings.ToLower(filepath.Ext(d.out))
-	switch kind {
-	case ".png", ".tif", ".tiff", ".dcm":
-	case "":
+	if d.out == "" {
 		return errors.New("no file was named; expected -o FILE ending in .png, .tif or .dcm; name it")
-	default:
-		return fmt.Errorf("%s: ends in %s; expected .png, .tif or .dcm; choose one", d.out, kind)
 	}
 	s, err := d.spec()
 	if err != nil {
 		return err
 	}
-	info, ok := patternInfo(name)
-	if !ok {
-		return fmt.Errorf("pattern %q is not known; expected one of %s; run \"evenstep pattern list\"", name, patternNames())
-	}
-	if d.readings != "" {
+	if info, _ := sheet.Find(name); d.readings != "" {
 		if info.Takes&patterns.TakesSteps == 0 {
 			return fmt.Errorf("pattern %s takes no steps, so --readings has no use; expected it with low-contrast or disks; leave it away", name)
 		}
@@ -128,59 +117,11 @@ func (p program) draw(name string, d *drawFlags) error {
 			return err
 		}
 	}
-	var b bytes.Buffer
-	if info.Colour {
-		if kind != ".png" {
-			return fmt.Errorf("pattern %s is in colour; expected a .png; choose that ending", name)
-		}
-		rgb, err := patterns.DrawRGB(name, s)
-		if err != nil {
-			return err
-		}
-		err = rgb.WritePNG(&b)
-		if err != nil {
-			return system(fmt.Errorf("%s: %w", d.out, err))
-		}
-		return writeFile(d.out, b.Bytes(), d.replace)
-	}
-	plane, err := patterns.Draw(name, s)
+	b, err := sheet.Encode(d.out, name, s, "evenstep "+version(), p.now(), rand.Reader)
 	if err != nil {
 		return err
 	}
-	switch kind {
-	case ".png":
-		err = plane.WritePNG(&b)
-	case ".dcm":
-		cells := make([]uint16, 0, s.Width*s.Height)
-		for y := range s.Height {
-			cells = append(cells, plane.Row(y)...)
-		}
-		capture := dicom.Capture{Columns: s.Width, Rows: s.Height, BitsStored: s.Bits, Cells: cells, Title: name, Software: "evenstep " + version()}
-		err = dicom.WriteCapture(&b, capture, rand.Reader, p.now())
-	default:
-		err = plane.WriteTIFF(&b)
-	}
-	if err != nil {
-		return system(fmt.Errorf("%s: %w", d.out, err))
-	}
-	return writeFile(d.out, b.Bytes(), d.replace)
-}
-
-func patternInfo(name string) (patterns.Info, bool) {
-	for _, i := range patterns.List() {
-		if i.Name == name {
-			return i, true
-		}
-	}
-	return patterns.Info{}, false
-}
-
-func patternNames() string {
-	var names []string
-	for _, i := range patterns.List() {
-		names = append(names, i.Name)
-	}
-	return strings.Join(names, ", ")
+	return writeFile(d.out, b, d.replace)
 }
 
 // spec reads the flags of the drawing.
