@@ -12,9 +12,9 @@ func Start(app fyne.App, w fyne.Window, d Deps) error {
 		return err
 	}
 	b := newBench(d)
-	reg, recs := newRegisterPage(d), newRecordsPage(d)
-	s := newShell(w, b, reg, recs, limits)
-	b.shell, reg.shell, recs.shell, limits.shell = s, s, s, s
+	reg, recs, sheets := newRegisterPage(d), newRecordsPage(d), newPatternsPage(d)
+	s := newShell(w, b, reg, recs, sheets, limits)
+	b.shell, reg.shell, recs.shell, sheets.shell, limits.shell = s, s, s, s, s
 	w.Resize(sizeFor(d.Width, d.Height, w.Canvas().Scale()))
 	s.open(0)
 	for _, line := range d.Store.Warnings() {

@@ -25,6 +25,10 @@ func (s *shell) askPath(title, suggested, button string, save bool, then func(pa
 			path = filepath.Join(home, path[2:])
 		}
 		s.closeDialog()
+		if _, err := os.Stat(path); save && err == nil {
+			s.confirm("Write over it", path+" is there already.", "Write over it", func() { then(path) })
+			return
+		}
 		then(path)
 	}
 	f.OnSubmitted = func(string) { take() }
