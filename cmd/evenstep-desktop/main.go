@@ -20,13 +20,39 @@ import (
 	"evenstep/ui"
 )
 
+// Exit codes, as those of the commands.
+const (
+	exitUse    = 2 // wrong use, or a file that is no register
+	exitSystem = 3 // no display, a disk that fails
+)
+
 func main() {
-	register := flag.String("register", "", "the register's `FILE` (default: EVENSTEP_REGISTER, else the user's data folder)")
-	fill := flag.Bool("demo", false, "fill an empty register with an invented site")
-	flag.Parse()
-	if err := run(*register, *fill); err != nil {
+	f := flag.NewFlagSet("evenstep-desktop", flag.ContinueOnError)
+	f.SetOutput(io.Discard)
+	register := f.String("register", "", "the register's `FILE` (default: EVENSTEP_REGISTER, else the user's data folder)")
+	fill := f.Bool("demo", false, "fill an empty register with an invented site")
+	err := f.Parse(os.Args[1:])
+	switch {
+	case errors.Is(err, flag.ErrHelp):
+		f.SetOutput(os.Stdout)
+		fmt.Println("evenstep-desktop opens the window of Evenstep on a register.")
+		f.PrintDefaults()
+		return
+	case err == nil && f.NArg() > 0:
+		err = fmt.Errorf("%q was given; expected flags only; run \"evenstep-desktop --help\"", f.Arg(0))
+	case err != nil:
+		err = fmt.Errorf("%w; expected --register FILE or --demo; run \"evenstep-desktop --help\"", err)
+	}
+	code := exitUse
+	if err == nil {
+		err = run(*register, *fill)
+		if !errors.Is(err, store.ErrForeign) && !errors.Is(err, store.ErrNewer) && !errors.Is(err, store.ErrDamaged) {
+			code = exitSystem
+		}
+	}
+	if err != nil {
 		fmt.Fprintf(os.Stderr, "evenstep-desktop: %s\n", strings.Join(strings.Fields(err.Error()), " "))
-		os.Exit(3)
+		os.Exit(code)
 	}
 }
 
