@@ -6,6 +6,7 @@ import (
 	"os"
 	"os/exec"
 	"path/filepath"
+	"strconv"
 	"strings"
 	"syscall"
 	"testing"
@@ -109,6 +110,13 @@ func (d *desk) typed(s string) {
 	d.t.Helper()
 	d.do("xdotool", "type", "--delay", "15", s)
 	d.keys("Return")
+}
+
+// click presses the pointer's button at a place in the window, in pixels from its top left.
+func (d *desk) click(x, y int) {
+	d.t.Helper()
+	window := strings.Fields(d.do("xdotool", "search", "--onlyvisible", "--name", "^Evenstep$"))[0]
+	d.do("xdotool", "mousemove", "--sync", "--window", window, strconv.Itoa(x), strconv.Itoa(y), "click", "1")
 }
 
 // until waits for something to be so in the register.

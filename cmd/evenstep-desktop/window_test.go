@@ -9,6 +9,7 @@ import (
 	"testing"
 	"time"
 
+	"evenstep/display/criteria"
 	"evenstep/display/store"
 )
 
@@ -93,7 +94,8 @@ func TestVisitByKeyboard(t *testing.T) {
 	d.keys("ctrl+Return")
 	d.until(path, "the record is sealed", func(s *store.Store) bool { return len(records(s)) == 1 })
 	pdf := filepath.Join(t.TempDir(), "report.pdf")
-	d.keys("ctrl+3", "Return", "ctrl+s", "ctrl+a")
+	d.click(45, 125) // Records, in the rail
+	d.keys("Return", "ctrl+s", "ctrl+a")
 	d.typed(pdf)
 	d.until(path, "the PDF is written", func(*store.Store) bool {
 		b, err := os.ReadFile(pdf)
@@ -131,6 +133,8 @@ func TestKnownMonitorTakesFewKeys(t *testing.T) {
 	d.until(path, "18 readings are kept", func(s *store.Store) bool { return readingsKept(s) == 18 })
 	d.keys("ctrl+Return")
 	d.until(path, "the first record is sealed", func(s *store.Store) bool { return len(records(s)) == 1 })
+
+	d.until(path, "the verdict is that of a monitor whose last step is 19 % off", func(s *store.Store) bool { return records(s)[0].Verdict == criteria.Fails })
 
 	presses := 0
 	press := func(names ...string) {
