@@ -30,6 +30,8 @@ type Record struct {
 	PlacesFile *SourceFile `json:"places_file,omitempty"`
 	Neighbour  *Neighbour  `json:"neighbour,omitempty"`
 
+	Table *Table `json:"table,omitempty"` // made in the visit; absent where none was
+
 	Scheme     *criteria.Used      `json:"scheme"` // null where none was asked for
 	Assessment criteria.Assessment `json:"assessment"`
 
@@ -88,6 +90,17 @@ type Place struct {
 	Level     int         `json:"level"`
 	Luminance float64     `json:"luminance_cd_m2"`
 	Colour    *[2]float64 `json:"u_v_prime,omitempty"`
+}
+
+// Table is a table from P-values to driving levels that was made from the visit's readings.
+type Table struct {
+	InBits       int      `json:"in_bits"`
+	OutBits      int      `json:"out_bits"`
+	Entries      []int    `json:"entries"`
+	AimMin       float64  `json:"aim_min_cd_m2"` // ambient light in it
+	AimMax       float64  `json:"aim_max_cd_m2"`
+	MaxDeviation float64  `json:"predicted_max_deviation"` // a fraction
+	Warnings     []string `json:"warnings,omitempty"`
 }
 
 // Neighbour is the other screen of the pair.

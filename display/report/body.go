@@ -255,8 +255,23 @@ func (b *body) figures(s *sheet) {
 		{"JNDs a step", reasoned(a.JNDStep.MaxDeviation, a.JNDStep.Reason, signedPercent) + information},
 		{"PS3.14 Annex C", b.annexC() + information},
 	}
+	if t := b.r.Table; t != nil {
+		two = append(two, pair{"table made", tableWords(t)})
+	}
 	const most = 5
 	s.columns(one, two, most)
+}
+
+// tableWords says what a table that was made in the visit is, and that it is a prediction.
+func tableWords(t *record.Table) string {
+	s := fmt.Sprintf("%d to %d bits, aim %s to %s, predicted deviation %s", t.InBits, t.OutBits, luminance(t.AimMin), luminance(t.AimMax), percent(t.MaxDeviation))
+	switch n := len(t.Warnings); {
+	case n == 1:
+		s += "; 1 warning, in the record"
+	case n > 1:
+		s += fmt.Sprintf("; %d warnings, in the record", n)
+	}
+	return s
 }
 
 const information = " (information)"

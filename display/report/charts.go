@@ -229,3 +229,40 @@ func SeriesChart(taken []response.LevelReading, top int) Chart {
 	c.Key = []KeyEntry{{Marker{Circle, true}, "read"}}
 	return c
 }
+
+// CurvePoint is a place on a monitor's characteristic curve: the driving level as a share of the highest,
+// luminances with ambient light in cd/m². Low and High are its 95 % interval; both 0 where there is none.
+type CurvePoint struct{ Drive, Luminance, Low, High float64 }
+
+// CurveChart shows a characteristic curve with its interval, and the readings that it was made from.
+func CurveChart(curve, points []CurvePoint) Chart {
+	c := Chart{Title: "Characteristic curve of the panel", Key: []KeyEntry{{Marker{Circle, true}, "read"}}}
+	lo, hi := math.Inf(1), 0.0
+	var line Line
+	for _, p := range curve {
+		if !finite(p.Luminance, p.Low, p.High) || p.Luminance <= 0 {
+			continue
+		}
+		line.At = append(line.At, XY{p.Drive, p.Luminance})
+		if p.High > p.Low && p.Low > 0 {
+			c.Bars = append(c.Bars, Bar{p.Drive, p.Low, p.High})
+		}
+		lo, hi = min(lo, p.Luminance), max(hi, p.Luminance)
+	}
+	for _, p := range points {
+		if finite(p.Luminance) && p.Luminance > 0 {
+			c.Marks = append(c.Marks, Mark{At: XY{p.Drive, p.Luminance}, Marker: Marker{Circle, true}})
+			lo, hi = min(lo, p.Luminance), max(hi, p.Luminance)
+		}
+	}
+	if len(line.At) == 0 {
+		c.Empty = "There is no curve."
+		return c
+	}
+	c.Note = "bars: 95 % interval of the curve"
+	c.Lines = []Line{line}
+	c.X = linearAxis("driving level, share of the highest", 0, 1, 5)
+	const least, most = 0.001, 100000
+	c.Y = logAxis("luminance with ambient light, cd/m²", min(most/10, max(least, lo)), max(least*10, min(most, hi)))
+	return c
+}

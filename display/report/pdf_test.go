@@ -65,6 +65,16 @@ func eachSample(t *testing.T, check func(t *testing.T, name string, r *record.Re
 	}
 }
 
+// TestTableIsNamed: a table that was made in the visit is named on the page, as a prediction.
+func TestTableIsNamed(t *testing.T) {
+	got := tableWords(&record.Table{InBits: 8, OutBits: 10, AimMin: 1.2, AimMax: 420, MaxDeviation: .013, Warnings: []string{"w"}})
+	for _, want := range []string{"8 to 10 bits", "predicted deviation 1.3 %", "1 warning"} {
+		if !strings.Contains(got, want) {
+			t.Errorf("%q; want %q in it", got, want)
+		}
+	}
+}
+
 func TestSameRecordGivesSameBytes(t *testing.T) {
 	eachSample(t, func(t *testing.T, _ string, r *record.Record, p Paper) {
 		if !bytes.Equal(render(t, r, Options{p}), render(t, r, Options{p})) {

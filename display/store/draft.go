@@ -32,6 +32,7 @@ type Head struct {
 	Neighbour *criteria.Neighbour `json:"neighbour,omitempty"`
 	OtherOne  string              `json:"other_one,omitempty"` // serial of the neighbour
 	Notes     string              `json:"notes,omitempty"`
+	Table     *record.Table       `json:"table,omitempty"` // made from the readings so far
 }
 
 // LightKind says how the room light of a visit is stated.
@@ -139,7 +140,7 @@ func (d Draft) Document(m Monitor, meter *Meter, used *criteria.Used, program st
 		Program: program,
 		Visit:   record.Visit{Kind: d.Kind, Time: now.UTC().Format(time.RFC3339), Notes: d.Notes},
 		Monitor: record.Monitor{Serial: m.Serial, Name: m.Title()},
-		Scheme:  used, Assessment: a,
+		Scheme:  used, Assessment: a, Table: d.Table,
 	}
 	if n := []rune(r.Monitor.Name); len(n) > 64 {
 		r.Monitor.Name = string(n[:63]) + "…"
