@@ -73,6 +73,7 @@ func (b *bench) actions() []action {
 		{"Setup and room light", control(fyne.KeyE), "Ctrl+E", b.showSetup},
 		{"Places (uniformity)", control(fyne.KeyU), "Ctrl+U", b.showPlaces},
 		{"Neighbour", control(fyne.KeyP), "Ctrl+P", b.showNeighbour},
+		{"Table", control(fyne.KeyT), "Ctrl+T", b.showTable},
 		{"Notes", control(fyne.KeyN), "Ctrl+N", b.showNotes},
 		{"Load a readings file", control(fyne.KeyO), "Ctrl+O", b.loadFile},
 		{"Seal the record", control(fyne.KeyReturn), "Ctrl+Enter", b.seal},
@@ -272,7 +273,7 @@ func (b *bench) changed() {
 	s := b.levels.series
 	b.phases.Objects = []fyne.CanvasObject{
 		b.phase("Setup", b.setupDone(), b.showSetup), b.phase(fmt.Sprintf("Levels %d of %d", s.done(), len(s.plan)), s.done() == len(s.plan), b.showLevels),
-		b.phase("Places", len(d.Places) > 0, b.showPlaces), b.phase("Neighbour", d.Neighbour != nil, b.showNeighbour), b.phase("Notes", d.Notes != "", b.showNotes),
+		b.phase("Places", len(d.Places) > 0, b.showPlaces), b.phase("Neighbour", d.Neighbour != nil, b.showNeighbour), b.phase("Table", d.Table != nil, b.showTable), b.phase("Notes", d.Notes != "", b.showNotes),
 	}
 	b.phases.Refresh()
 	d.Readings = s.taken
@@ -365,10 +366,30 @@ func lightLine(d store.Draft) string {
 }
 
 // add implements journal.
-func (b *bench) add(r readings.Reading) error { return b.deps.Store.AddReading(b.draft.ID, r) }
+func (b *bench) add(r readings.Reading) error {
+	if err := b.dropTable(); err != nil {
+		return err
+	}
+	return b.deps.Store.AddReading(b.draft.ID, r)
+}
 
 // undo implements journal.
-func (b *bench) undo() error { return b.deps.Store.UndoReading(b.draft.ID) }
+func (b *bench) undo() error {
+	if err := b.dropTable(); err != nil {
+		return err
+	}
+	return b.deps.Store.UndoReading(b.draft.ID)
+}
+
+// dropTable takes a table out of the visit that was made from other readings than there are now.
+func (b *bench) dropTable() error {
+	if b.draft.Table == nil {
+		return nil
+	}
+	b.draft.Table = nil
+	b.shell.say("the readings changed: make the table again (Ctrl+T)")
+	return b.deps.Store.SaveHead(b.draft.ID, b.draft.Head)
+}
 
 // saveHead keeps the head and shows what follows from it.
 func (b *bench) saveHead() bool {

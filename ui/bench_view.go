@@ -326,6 +326,9 @@ func (b *verdictBand) show(a criteria.Assessment, before string) {
 			line += "Looks like: " + join(c.Causes, ", or ") + " (" + c.Evidence + "): " + c.Advice + ".   "
 		}
 	}
+	if a.Scheme == "" {
+		line += "No limits are chosen, so nothing is judged (Ctrl+E)."
+	}
 	if a.Scheme != "" {
 		line += report.RoomLight(a.IlluminanceRange)
 		if a.RepeatsNeeded == nil || *a.RepeatsNeeded > 0 {

@@ -91,6 +91,12 @@ func TestVisitByKeyboard(t *testing.T) {
 	}
 	d.until(path, "18 readings are kept", func(s *store.Store) bool { return readingsKept(s) == 18 })
 	d.picture("levels")
+	d.keys("ctrl+t", "Return")
+	d.until(path, "the table is kept", func(s *store.Store) bool {
+		ds, err := s.Drafts()
+		return err == nil && len(ds) == 1 && ds[0].Table != nil
+	})
+	d.picture("table")
 	d.keys("ctrl+Return")
 	d.until(path, "the record is sealed", func(s *store.Store) bool { return len(records(s)) == 1 })
 	pdf := filepath.Join(t.TempDir(), "report.pdf")
@@ -112,6 +118,9 @@ func TestVisitByKeyboard(t *testing.T) {
 	r, _, err := s.Record(records(s)[0].ID)
 	if err != nil {
 		t.Fatal(err)
+	}
+	if r.Table == nil || len(r.Table.Entries) != 256 || r.Table.Entries[255] != 1023 {
+		t.Errorf("the table in the record: %+v", r.Table)
 	}
 	if len(r.Readings) != 18 || r.Readings[17].Luminance != 402 || *r.Assessment.Ambient != .12 || r.Monitor.Serial != "EV-77" {
 		t.Errorf("%+v, ambient %v", r.Readings, *r.Assessment.Ambient)

@@ -89,7 +89,7 @@ func (p program) root() *cobra.Command {
 	root.SetFlagErrorFunc(func(c *cobra.Command, err error) error {
 		return fmt.Errorf("%w; run \"%s --help\" for the flags", err, c.CommandPath())
 	})
-	root.AddCommand(p.assessCommand(), p.criteriaCommand(), p.recordCommand(), p.registerCommand(), p.demoCommand(), p.patternCommand())
+	root.AddCommand(p.assessCommand(), p.criteriaCommand(), p.recordCommand(), p.registerCommand(), p.demoCommand(), p.patternCommand(), p.calibrateCommand(), p.windowCommand(), p.renderCommand())
 	return root
 }
 

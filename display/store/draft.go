@@ -2,7 +2,9 @@ package store
 
 import (
 	"context"
+	"crypto/sha256"
 	"database/sql"
+	"encoding/hex"
 	"encoding/json"
 	"errors"
 	"fmt"
@@ -110,6 +112,16 @@ func (d Draft) Input(m Monitor, meter *Meter) (response.Input, error) {
 		}
 	}
 	return in, nil
+}
+
+// ReadingsSHA256 identifies the readings so far: the hash of one line a reading, of level, luminance in
+// cd/m2, role and time.
+func (d Draft) ReadingsSHA256() string {
+	h := sha256.New()
+	for _, r := range d.Readings {
+		fmt.Fprintf(h, "%d,%v,%s,%s\n", r.Level, float64(r.Luminance), r.Role, instant(r.Time))
+	}
+	return hex.EncodeToString(h.Sum(nil))
 }
 
 // Judge says everything that can be said of the visit so far. It fails while the ends of the range or
