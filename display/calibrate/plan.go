@@ -59,8 +59,8 @@ const (
 )
 
 // Next looks at the readings so far. before holds the upper ends of the intervals that earlier calls gave, in
-// order. It is done when the greatest deviation is under the goal with its interval, when the last two
-// batches made it fall no further, or when the most readings were taken. It fails where no curve, or no
+// order. It is done when the greatest deviation is under the goal with its interval, when it is under 10 %
+// and the last two batches made it fall no further, or when the most readings were taken. It fails where no curve, or no
 // table over the panel's range, can be made.
 func (p Plan) Next(in Input, before []float64) (Next, error) {
 	c, err := NewCurve(in)
@@ -95,7 +95,7 @@ func (p Plan) after(c *Curve, before []float64) (Next, error) {
 		n.Done, n.Reason = true, fmt.Sprintf("the greatest deviation is %.1f %% at most; %.1f %% was asked for", 100*high, 100*p.Goal)
 	case taken >= p.Most:
 		n.Done, n.Reason = true, fmt.Sprintf("%d readings were taken; the greatest deviation is %.1f %% at most; %.1f %% was asked for", taken, 100*high, 100*p.Goal)
-	case len(before) >= rounds && high > before[len(before)-rounds]*(1-little):
+	case len(before) >= rounds && high <= holds && high > before[len(before)-rounds]*(1-little):
 		n.Done, n.Reason = true, fmt.Sprintf("further readings no longer help: the greatest deviation stays at %.1f %% at most; %.1f %% was asked for", 100*high, 100*p.Goal)
 	}
 	if !n.Done {
@@ -110,7 +110,7 @@ func (c *Curve) driftLevel() int { return c.Points[len(c.Points)-1].Level }
 
 // candidates are the levels that a batch may choose from.
 func (c *Curve) candidates() []int {
-	const most = 192
+	const most = 112
 	n := min(c.top()+1, most)
 	out := []int{}
 	for i := range n {

@@ -89,7 +89,7 @@ func (c *Curve) Predict(t luts.Table, path Path) (*Prediction, error) {
 		l := c.luminance(x)
 		j, err := gsdf.Index(photometry.CdM2(l))
 		if err != nil {
-			return nil, fmt.Errorf("P-value %d: %w; state the ambient light, or aim for another range", i, err)
+			return nil, fmt.Errorf("table: P-value %d: %w; state the ambient light, or aim for another range", i, err)
 		}
 		js[i] = float64(j)
 	}
