@@ -49,6 +49,9 @@ func parse(text []byte) (any, error) {
 		return nil, fmt.Errorf("the JSON text has %d bytes; expected at most %d", len(text), longest)
 	}
 	if !utf8.Valid(text) {
+		if cutInCharacter(text) {
+			return nil, errNotWhole
+		}
 		return nil, errors.New("the JSON text is not UTF-8; expected UTF-8")
 	}
 	if err := checkSurrogates(text); err != nil {
@@ -64,6 +67,16 @@ func parse(text []byte) (any, error) {
 		return nil, errors.New("text follows the JSON value; expected its end")
 	}
 	return v, nil
+}
+
+// cutInCharacter tells text that ends within a character of several bytes from text that is no UTF-8.
+func cutInCharacter(text []byte) bool {
+	for n := 1; n < utf8.UTFMax && n <= len(text); n++ {
+		if head, tail := text[:len(text)-n], text[len(text)-n:]; !utf8.FullRune(tail) {
+			return utf8.Valid(head)
+		}
+	}
+	return false
 }
 
 func parseValue(d *json.Decoder, depth int) (any, error) {

@@ -6,13 +6,19 @@ import (
 	"encoding/binary"
 	"encoding/hex"
 	"encoding/json"
+	"fmt"
+	"maps"
 	"math"
+	"math/rand/v2"
 	"os"
 	"path/filepath"
 	"reflect"
+	"slices"
 	"strconv"
 	"strings"
 	"testing"
+	"unicode/utf16"
+	"unicode/utf8"
 )
 
 // TestPublishedVectors checks the vectors of the scheme's author (testdata/jcs/SOURCE).
@@ -97,19 +103,173 @@ func TestNumberSeries(t *testing.T) {
 	}
 }
 
+// TestNumbers holds the samples that the reference material shows (testdata/README.md, "Sample lines",
+// of the module in testdata/jcs/SOURCE), and the forms that JSON texts give a number beside.
+func TestNumbers(t *testing.T) {
+	for _, c := range []struct {
+		bits uint64
+		want string
+	}{
+		{0x4340000000000001, "9007199254740994"},
+		{0x4340000000000002, "9007199254740996"},
+		{0x444b1ae4d6e2ef50, "1e+21"},
+		{0x3eb0c6f7a0b5ed8d, "0.000001"},
+		{0x3eb0c6f7a0b5ed8c, "9.999999999999997e-7"},
+		{0x8000000000000000, "0"},
+		{0, "0"},
+	} {
+		if got := string(appendNumber(nil, math.Float64frombits(c.bits))); got != c.want {
+			t.Errorf("%x: %s, want %s", c.bits, got, c.want)
+		}
+	}
+	for text, want := range map[string]string{"-0": "0", "-0.0e5": "0", "1E2": "100", "10.50": "10.5", "1e-400": "0"} {
+		if got, err := Canonical([]byte(text)); err != nil || string(got) != want {
+			t.Errorf("%s: %s (%v), want %s", text, got, err, want)
+		}
+	}
+}
+
+// TestEscapes holds RFC 8785 section 3.2.2.2 (from memory): short escapes where JSON has them, \u00xx
+// in lower case for other controls, all else as it is.
+func TestEscapes(t *testing.T) {
+	const in = `"\u0008\u0009\u000A\u000C\u000D\u0000\u001F\u0022\u005C\/\u007F\u2028\u003C"`
+	const want = `"\b\t\n\f\r\u0000\u001f\"\\/` + "\x7f\u2028<" + `"`
+	if got, err := Canonical([]byte(in)); err != nil || string(got) != want {
+		t.Errorf("%s (%v), want %s", got, err, want)
+	}
+}
+
+// TestSameMeaningSameForm writes random values in two ways and compares: keys in any order, text
+// escaped or not, white space or none.
+func TestSameMeaningSameForm(t *testing.T) {
+	rng := rand.New(rand.NewPCG(3, 4))
+	for range 2000 {
+		v := randomValue(rng, 4)
+		plain, err := Canonical(looseForm(rng, v))
+		if err != nil {
+			t.Fatal(err)
+		}
+		other, err := Canonical(looseForm(rng, v))
+		if err != nil || !bytes.Equal(plain, other) {
+			t.Fatalf("two forms of one value: %q, %q (%v)", plain, other, err)
+		}
+		if again, err := Canonical(plain); err != nil || !bytes.Equal(again, plain) {
+			t.Fatalf("%q became %q (%v)", plain, again, err)
+		}
+	}
+}
+
+func randomValue(rng *rand.Rand, depth int) any {
+	kinds := 6
+	if depth == 0 {
+		kinds = 4
+	}
+	switch rng.IntN(kinds) {
+	case 0:
+		return nil
+	case 1:
+		return rng.IntN(2) == 0
+	case 2:
+		for {
+			if f := math.Float64frombits(rng.Uint64()); !math.IsNaN(f) && !math.IsInf(f, 0) {
+				return f
+			}
+		}
+	case 3:
+		return randomText(rng)
+	case 4:
+		list := make([]any, rng.IntN(5))
+		for i := range list {
+			list[i] = randomValue(rng, depth-1)
+		}
+		return list
+	}
+	m := map[string]any{}
+	for range rng.IntN(5) {
+		m[randomText(rng)] = randomValue(rng, depth-1)
+	}
+	return m
+}
+
+func randomText(rng *rand.Rand) string {
+	alphabet := []rune("ab\"\\/\x00\x1f\x7f\n\t\u0080ö€\u2028\ufb33\ufffd😀𝄞<>&")
+	text := make([]rune, rng.IntN(6))
+	for i := range text {
+		text[i] = alphabet[rng.IntN(len(alphabet))]
+	}
+	return string(text)
+}
+
+func looseForm(rng *rand.Rand, v any) []byte {
+	space := func() string { return []string{"", " ", "\n", "\t", "\r\n"}[rng.IntN(5)] }
+	var b []byte
+	switch v := v.(type) {
+	case nil:
+		b = append(b, "null"...)
+	case bool:
+		b = strconv.AppendBool(b, v)
+	case float64:
+		b = strconv.AppendFloat(b, v, "eE"[rng.IntN(2)], -1+18*rng.IntN(2), 64)
+	case string:
+		b = append(b, '"')
+		for _, r := range v {
+			if rng.IntN(2) == 0 && r >= ' ' && r != '"' && r != '\\' {
+				b = utf8.AppendRune(b, r)
+				continue
+			}
+			for _, u := range utf16.Encode([]rune{r}) {
+				b = fmt.Appendf(b, []string{`\u%04x`, `\u%04X`}[rng.IntN(2)], u)
+			}
+		}
+		b = append(b, '"')
+	case []any:
+		b = append(b, '[')
+		for i, e := range v {
+			if i > 0 {
+				b = append(b, ',')
+			}
+			b = append(b, looseForm(rng, e)...)
+		}
+		b = append(b, space()+"]"...)
+	case map[string]any:
+		keys := slices.Sorted(maps.Keys(v))
+		rng.Shuffle(len(keys), func(i, j int) { keys[i], keys[j] = keys[j], keys[i] })
+		b = append(b, '{')
+		for i, k := range keys {
+			if i > 0 {
+				b = append(b, ',')
+			}
+			b = append(b, looseForm(rng, k)...)
+			b = append(b, ':')
+			b = append(b, looseForm(rng, v[k])...)
+		}
+		b = append(b, space()+"}"...)
+	}
+	return append([]byte(space()), append(b, space()...)...)
+}
+
 func TestCanonicalRefuses(t *testing.T) {
 	for _, c := range []struct{ name, text, want string }{
 		{"empty", "", "ends too early"},
 		{"cut off", `{"a":[1,2`, "ends too early"},
 		{"cut in a word", `{"a":tr`, "ends too early"},
 		{"no JSON", `{a:1}`, "expected JSON"},
+		{"comma before the end", `[1,]`, "expected JSON"},
+		{"brackets that do not match", `[1}`, "expected JSON"},
+		{"key that is no text", `{1:2}`, "expected"},
+		{"leading zero", `[01]`, "expected JSON"},
+		{"not a number", `[NaN]`, "expected JSON"},
 		{"two values", `{} {}`, "text follows"},
 		{"key twice", `{"a":1,"b":2,"a":1}`, `key "a" stands twice`},
 		{"key twice, escaped", `{"a":1,"\u0061":1}`, `key "a" stands twice`},
 		{"number too large", `[1e400]`, "a double holds"},
 		{"first half of a pair", `["\ud800"]`, "half a surrogate pair"},
 		{"second half of a pair", `["\udc00"]`, "half a surrogate pair"},
+		{"first half before plain text", `["\ud800x"]`, "half a surrogate pair"},
+		{"first half at the end", `["\ud800`, "ends too early"},
 		{"two first halves", `["\ud800\ud800"]`, "half a surrogate pair"},
+		{"cut in a character", "[\"\xf0\x9f\x98", "ends too early"},
+		{"not UTF-8, and cut", "[\"\xff\xf0\x9f", "not UTF-8"},
 		{"not UTF-8", "[\"\xff\"]", "not UTF-8"},
 		{"too deep", strings.Repeat("[", deepest+2) + strings.Repeat("]", deepest+2), "nests deeper"},
 		{"too long", `"` + strings.Repeat("a", longest) + `"`, "expected at most"},

@@ -1,15 +1,19 @@
 package record
 
 import (
+	"bytes"
 	"errors"
 	"fmt"
 	"io/fs"
 	"os"
 	"path/filepath"
+	"runtime"
+	"syscall"
 )
 
 // WriteFile writes a whole file or none: beside its place under another name, to the disk, then moved
-// there. Without replace it leaves a file that is there alone; the error then wraps fs.ErrExist.
+// there. Without replace it leaves another file that is there alone; the error then wraps fs.ErrExist.
+// A file that holds text already is as good as written.
 func WriteFile(path string, text []byte, replace bool) (err error) {
 	dir := filepath.Dir(path)
 	f, err := os.CreateTemp(dir, ".evenstep-*")
@@ -46,12 +50,44 @@ func WriteFile(path string, text []byte, replace bool) (err error) {
 			err = os.Rename(beside, path)
 		}
 	}
-	if err != nil {
-		return fmt.Errorf("%s: %w", path, err)
+	if errors.Is(err, fs.ErrExist) && !replace {
+		if holds(path, text) {
+			os.Remove(beside)
+			return syncFolder(path)
+		}
+		return fmt.Errorf("%s: %w; expected no file there; choose another name or remove it", path, fs.ErrExist)
 	}
-	if d, e := os.Open(dir); e == nil { // so that the name outlives a power cut; not every system can
-		_ = d.Sync()
+	if err != nil {
+		return fmt.Errorf("%s: %w; expected a place for a file; choose another name", path, err)
+	}
+	return syncFolder(path)
+}
+
+func holds(path string, text []byte) bool {
+	info, err := os.Lstat(path)
+	if err != nil || !info.Mode().IsRegular() || info.Size() != int64(len(text)) {
+		return false
+	}
+	there, err := os.ReadFile(path)
+	return err == nil && bytes.Equal(there, text)
+}
+
+// syncFolder makes the name of a file outlive a power cut. Windows cannot, nor can some file systems
+// elsewhere; there is nothing to be done about it then.
+func syncFolder(path string) error {
+	if runtime.GOOS == "windows" {
+		return nil
+	}
+	d, err := os.Open(filepath.Dir(path))
+	if errors.Is(err, fs.ErrPermission) {
+		return nil // a folder that may be written to and not be read
+	}
+	if err == nil {
+		err = d.Sync()
 		d.Close()
+	}
+	if err != nil && !errors.Is(err, errors.ErrUnsupported) && !errors.Is(err, syscall.EINVAL) {
+		return fmt.Errorf("%s: the file is written, but its folder may not be on the disk: %w; expected a sound disk; write it again", path, err)
 	}
 	return nil
 }

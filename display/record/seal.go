@@ -8,14 +8,12 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"reflect"
 	"slices"
 	"strings"
 	"time"
 	"unicode"
 	"unicode/utf8"
-
-	"evenstep/display/criteria"
-	"evenstep/display/response"
 )
 
 // What Read refuses, beside text that is no JSON at all.
@@ -32,25 +30,43 @@ func Kinds() []string { return []string{"acceptance", "constancy", "check", "aft
 // longestID bounds ids, so that a report can show them.
 const longestID = 64
 
-// Seal sets schema, version and hash of a copy of r and returns it with its canonical bytes, which end
-// with a line break. It fails where a field is not fit to be kept: a time that is not RFC 3339, an id
-// with a line break, an unknown kind of visit, a number that is not finite.
+// Seal sets schema, version and hash of a copy of r and returns it, as Read will, with its canonical
+// bytes, which end with a line break. It fails where a field is not fit to be kept: a time that is not
+// RFC 3339, an id with a line break, an unknown kind of visit, a number that is not finite.
 func Seal(r Record) (*Record, []byte, error) {
 	r.Schema, r.Version, r.SHA256 = Schema, Version, ""
 	if err := r.check(); err != nil {
 		return nil, nil, fmt.Errorf("record: %w", err)
 	}
-	r.fill()
-	body, err := r.canonical()
+	sealed, err := r.clone()
 	if err != nil {
 		return nil, nil, fmt.Errorf("record: %w", err)
 	}
-	r.SHA256 = hashOf(body)
+	fill(reflect.ValueOf(sealed))
+	body, err := sealed.canonical()
+	if err != nil {
+		return nil, nil, fmt.Errorf("record: %w", err)
+	}
+	sealed.SHA256 = hashOf(body)
+	text, err := sealed.canonical()
+	if err != nil {
+		return nil, nil, fmt.Errorf("record: %w", err)
+	}
+	return sealed, append(text, '\n'), nil
+}
+
+// clone gives the record that its own JSON reads back as. It shares nothing with r, and text that is
+// not UTF-8, as a file name may hold, is in it as the file will have it.
+func (r *Record) clone() (*Record, error) {
 	text, err := r.canonical()
 	if err != nil {
-		return nil, nil, fmt.Errorf("record: %w", err)
+		return nil, err
 	}
-	return &r, append(text, '\n'), nil
+	var c Record
+	if err := json.Unmarshal(text, &c); err != nil {
+		return nil, fmt.Errorf("its own form cannot be read back: %w", err)
+	}
+	return &c, nil
 }
 
 func (r *Record) canonical() ([]byte, error) {
@@ -66,7 +82,7 @@ func (r *Record) check() error {
 	if !slices.Contains(Kinds(), r.Visit.Kind) {
 		return fmt.Errorf("kind of visit is %q; expected one of %s; choose one", r.Visit.Kind, strings.Join(Kinds(), ", "))
 	}
-	if _, err := time.Parse(time.RFC3339, r.Visit.Time); err != nil {
+	if !isTime(r.Visit.Time) {
 		return fmt.Errorf("time of the visit is %q; expected RFC 3339, as 2026-11-30T09:15:00Z; correct it", r.Visit.Time)
 	}
 	if d := r.Meter.CalibratedOn; d != "" {
@@ -95,61 +111,73 @@ func (r *Record) check() error {
 		return fmt.Errorf("the notes have %d characters; expected at most %d; shorten them", n, longestNote)
 	}
 	for _, rd := range r.Readings {
-		if rd.Time == "" {
-			continue
-		}
-		if _, err := time.Parse(time.RFC3339, rd.Time); err != nil {
+		if rd.Time != "" && !isTime(rd.Time) {
 			return fmt.Errorf("level %d: time of the reading is %q; expected RFC 3339; correct it", rd.Level, rd.Time)
 		}
 	}
 	return nil
 }
 
-// fill puts an empty list where one is missing, so that a list never reads null.
-func (r *Record) fill() {
-	if r.Persons == nil {
-		r.Persons = []Person{}
-	}
-	if r.Readings == nil {
-		r.Readings = []Reading{}
-	}
-	a := &r.Assessment
-	if a.Steps == nil {
-		a.Steps = []criteria.StepFigure{}
-	}
-	if a.AnnexC.Intervals == nil {
-		a.AnnexC.Intervals = []float64{}
-	}
-	if a.Findings == nil {
-		a.Findings = []criteria.Finding{}
-	}
-	if a.NotAssessed == nil {
-		a.NotAssessed = []criteria.Unassessed{}
-	}
-	if a.Causes == nil {
-		a.Causes = []response.Cause{}
+// isTime is stricter than time.Parse, which lets an hour of one digit and a comma before the fraction
+// pass.
+func isTime(s string) bool {
+	_, err := time.Parse(time.RFC3339, s)
+	return err == nil && s[len("2026-11-30T09")] == ':' && !strings.Contains(s, ",")
+}
+
+// fill puts an empty list wherever one is missing that the form always shows, so that a list never
+// reads null.
+func fill(v reflect.Value) {
+	switch v.Kind() {
+	case reflect.Pointer:
+		if !v.IsNil() {
+			fill(v.Elem())
+		}
+	case reflect.Slice:
+		for i := range v.Len() {
+			fill(v.Index(i))
+		}
+	case reflect.Struct:
+		for i := range v.NumField() {
+			field := v.Type().Field(i)
+			if !field.IsExported() {
+				continue
+			}
+			f := v.Field(i)
+			if f.Kind() == reflect.Slice && f.IsNil() && !strings.Contains(field.Tag.Get("json"), ",omitempty") {
+				f.Set(reflect.MakeSlice(f.Type(), 0, 0))
+			}
+			fill(f)
+		}
 	}
 }
 
 // Read reads a sealed record strictly: its bytes are the canonical form, its hash is that of its
-// content, and it has no field that this program does not know. name stands for the file in errors;
+// content, and it has no field that this program does not know. It does not check again what Seal
+// checked, so that a record stays readable where the checks grow stricter. name stands for the file in errors;
 // errors.Is finds ErrForeign, ErrNewer, ErrTruncated or ErrAltered in them.
 func Read(name string, text []byte) (*Record, error) {
 	fault := func(err error, do string) error {
 		return fmt.Errorf("%s: %w; expected a sealed record as this program writes it; %s", name, err, do)
 	}
-	const restore = "take it from a copy that verifies"
+	const (
+		restore = "take it from a copy that verifies"
+		check   = "check that it is the right file"
+	)
 	body, ended := bytes.CutSuffix(text, []byte("\n"))
 	v, err := parse(body)
 	if err != nil {
 		if errors.Is(err, errNotWhole) {
 			return nil, fault(ErrTruncated, restore)
 		}
+		if !looksOwn(body) {
+			return nil, fault(fmt.Errorf("%w (%w)", ErrForeign, err), check)
+		}
 		return nil, fault(fmt.Errorf("%w (%w)", ErrAltered, err), restore)
 	}
 	top, ok := v.(object)
 	if !ok || top.text("schema") != Schema {
-		return nil, fault(ErrForeign, "is it the right file?")
+		return nil, fault(ErrForeign, check)
 	}
 	if n, ok := top.get("version").(float64); !ok || n != Version {
 		if ok && n > Version {
@@ -167,16 +195,48 @@ func Read(name string, text []byte) (*Record, error) {
 	if top.text("sha256") != hashOf(appendCanonical(nil, bare)) {
 		return nil, fault(ErrAltered, restore)
 	}
+	if key, odd := oddKey(top); odd {
+		return nil, fault(fmt.Errorf("%w (unknown key %q)", ErrForeign, shorten(key)), check)
+	}
 	var r Record
 	d := json.NewDecoder(bytes.NewReader(body))
 	d.DisallowUnknownFields()
 	if err := d.Decode(&r); err != nil {
-		return nil, fault(fmt.Errorf("%w (%w)", ErrForeign, err), "is it the right file?")
+		return nil, fault(fmt.Errorf("%w (%w)", ErrForeign, err), check)
 	}
 	if _, err := d.Token(); !errors.Is(err, io.EOF) {
 		return nil, fault(ErrAltered, restore)
 	}
 	return &r, nil
+}
+
+// looksOwn tells a record that lost its form from a file that never was one. "assessment" is the first
+// of a record's keys.
+func looksOwn(text []byte) bool {
+	return bytes.HasPrefix(text, []byte(`{"assessment":`)) || bytes.Contains(text, []byte(`"schema":"`+Schema+`"`))
+}
+
+// oddKey finds a key that is not spelled as a record's keys are. The decoder would take "Program" for
+// "program", and the last of both.
+func oddKey(v any) (key string, odd bool) {
+	switch v := v.(type) {
+	case []any:
+		for _, e := range v {
+			if key, odd = oddKey(e); odd {
+				return key, true
+			}
+		}
+	case object:
+		for _, m := range v {
+			if strings.Trim(m.key, "abcdefghijklmnopqrstuvwxyz0123456789_") != "" {
+				return m.key, true
+			}
+			if key, odd = oddKey(m.value); odd {
+				return key, true
+			}
+		}
+	}
+	return "", false
 }
 
 func hashOf(text []byte) string {
