@@ -3,6 +3,7 @@ package main
 import (
 	"errors"
 	"fmt"
+	"io/fs"
 	"os"
 	"strings"
 
@@ -13,25 +14,52 @@ import (
 	"evenstep/display/store"
 )
 
-// openRegister opens the register that --register names, or the usual one.
+// registerPath is what --register names, or the usual place.
+func (p program) registerPath(path string) (string, error) {
+	if path != "" {
+		return path, nil
+	}
+	return store.DefaultPath(p.getenv)
+}
+
+// openRegister opens the register that --register names, or the usual one; it makes one where there is
+// none.
 func (p program) openRegister(path string) (*store.Store, error) {
-	if path == "" {
-		var err error
-		if path, err = store.DefaultPath(p.getenv); err != nil {
-			return nil, err
-		}
+	path, err := p.registerPath(path)
+	if err != nil {
+		return nil, err
 	}
 	s, err := store.Open(path)
 	if err != nil {
-		if errors.Is(err, store.ErrForeign) || errors.Is(err, store.ErrNewer) || errors.Is(err, store.ErrDamaged) {
-			return nil, err
-		}
-		return nil, system(err)
+		return nil, registerError(err)
 	}
 	for _, w := range s.Warnings() {
 		fmt.Fprintf(p.err, "evenstep: warning: %s\n", w)
 	}
 	return s, nil
+}
+
+// existingRegister is openRegister for commands that have nothing to do with an empty one: a mistyped
+// path makes no file.
+func (p program) existingRegister(path string) (*store.Store, error) {
+	path, err := p.registerPath(path)
+	if err != nil {
+		return nil, err
+	}
+	if _, err := os.Stat(path); errors.Is(err, fs.ErrNotExist) {
+		return nil, fmt.Errorf("%s: there is no register; expected one; check --register, or make one with \"evenstep register import\" or \"evenstep demo\"", path)
+	}
+	return p.openRegister(path)
+}
+
+// registerError tells what the user named wrongly from what the computer failed at.
+func registerError(err error) error {
+	for _, use := range []error{store.ErrForeign, store.ErrNewer, store.ErrDamaged, store.ErrInUse, fs.ErrNotExist, fs.ErrExist} {
+		if errors.Is(err, use) {
+			return err
+		}
+	}
+	return system(err)
 }
 
 func registerFlag(c *cobra.Command, path *string) {
@@ -71,16 +99,13 @@ backlight_hours, notes. An empty cell leaves what is there. All lines are carrie
 		Short: "Write a checked copy of the register",
 		Args:  oneFile("the copy to write"),
 		RunE: func(_ *cobra.Command, args []string) error {
-			s, err := p.openRegister(path)
+			s, err := p.existingRegister(path)
 			if err != nil {
 				return err
 			}
 			defer s.Close()
-			if _, err := os.Lstat(args[0]); err == nil {
-				return fmt.Errorf("%s: is there already; expected a new file; choose another name", args[0])
-			}
 			if err := s.Backup(args[0]); err != nil {
-				return system(err)
+				return registerError(err)
 			}
 			fmt.Fprintf(p.out, "copied %s to %s\n", s.Path(), args[0])
 			return nil
@@ -91,16 +116,13 @@ backlight_hours, notes. An empty cell leaves what is there. All lines are carrie
 		Short: "Put a backup in the register's place; what was there is kept beside it",
 		Args:  oneFile("a backup"),
 		RunE: func(_ *cobra.Command, args []string) error {
-			at := path
-			if at == "" {
-				var err error
-				if at, err = store.DefaultPath(p.getenv); err != nil {
-					return err
-				}
+			at, err := p.registerPath(path)
+			if err != nil {
+				return err
 			}
 			kept, err := store.Restore(args[0], at, p.now())
 			if err != nil {
-				return err
+				return registerError(err)
 			}
 			fmt.Fprintf(p.out, "restored %s from %s\n", at, args[0])
 			if kept != "" {
@@ -126,7 +148,7 @@ type listedMonitor struct {
 }
 
 func (p program) listRegister(path string, asJSON bool) error {
-	s, err := p.openRegister(path)
+	s, err := p.existingRegister(path)
 	if err != nil {
 		return err
 	}

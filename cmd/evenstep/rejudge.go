@@ -47,7 +47,7 @@ func (p program) rejudgeCommand() *cobra.Command {
 			if err != nil {
 				return err
 			}
-			st, err := p.openRegister(path)
+			st, err := p.existingRegister(path)
 			if err != nil {
 				return err
 			}

@@ -8,6 +8,7 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"slices"
 	"time"
 
 	"evenstep/display/criteria"
@@ -92,10 +93,7 @@ func (d Draft) Input(m Monitor, meter *Meter) (response.Input, error) {
 		return response.Input{}, err
 	}
 	in := response.Input{Bits: m.Bits, Scale: readings.DDL, Light: light, Readings: append([]readings.Reading(nil), d.Readings...)}
-	factor := photometry.CdM2(1) // what the meter gives goes over to the site's reference meter here, the ambient luminance too
-	if meter != nil && meter.Factor > 0 {
-		factor = photometry.CdM2(meter.Factor)
-	}
+	factor := meter.factor() // what the meter gives goes over to the site's reference meter, the ambient luminance too
 	if d.Light.Kind == LightMeasured && factor != 1 {
 		in.Light = response.MeasuredAmbient(d.Light.Ambient*factor, light.Illuminance)
 	}
@@ -112,6 +110,28 @@ func (d Draft) Input(m Monitor, meter *Meter) (response.Input, error) {
 		}
 	}
 	return in, nil
+}
+
+// beside is what was read beside the levels, over to the reference meter as they are: the two screens of a
+// pair are compared.
+func (d Draft) beside(meter *Meter) ([]readings.Place, *criteria.Neighbour) {
+	factor := meter.factor()
+	if factor == 1 {
+		return d.Places, d.Neighbour
+	}
+	places := slices.Clone(d.Places)
+	for i := range places {
+		places[i].Luminance *= factor
+	}
+	if d.Neighbour == nil {
+		return places, nil
+	}
+	other := *d.Neighbour
+	if other.LuminanceMax != nil {
+		l := *other.LuminanceMax * factor
+		other.LuminanceMax = &l
+	}
+	return places, &other
 }
 
 // ReadingsSHA256 identifies the readings so far: the hash of one line a reading, of level, luminance in
@@ -135,7 +155,8 @@ func (d Draft) Judge(m Monitor, meter *Meter, used *criteria.Used) (*response.Re
 	if err != nil {
 		return nil, criteria.Assessment{}, err
 	}
-	return r, criteria.Assess(criteria.Visit{Response: r, Places: d.Places, Neighbour: d.Neighbour}, used), nil
+	places, other := d.beside(meter)
+	return r, criteria.Assess(criteria.Visit{Response: r, Places: places, Neighbour: other}, used), nil
 }
 
 // Document is the visit as a record that is not sealed yet.
@@ -171,7 +192,8 @@ func (d Draft) Document(m Monitor, meter *Meter, used *criteria.Used, program st
 	if d.Neighbour != nil {
 		r.Neighbour = &record.Neighbour{Serial: d.OtherOne}
 	}
-	r.Take(in, d.Places, d.Neighbour)
+	places, other := d.beside(meter)
+	r.Take(in, places, other)
 	return r, nil
 }
 

@@ -82,6 +82,9 @@ func readList(name string, r io.Reader) (rows []listRow, at map[string]int, err 
 		return nil, nil, fmt.Errorf("%s: more than %d bytes; expected a list of monitors; is it the right file?", name, longestList)
 	}
 	body := strings.TrimPrefix(string(text), "\ufeff")
+	if i := strings.Index(strings.ToValidUTF8(body, "\x00"), "\x00"); i >= 0 {
+		return nil, nil, fmt.Errorf("%s:%d: holds bytes that are no UTF-8 text; expected CSV in UTF-8; save the list as that", name, strings.Count(body[:i], "\n")+1)
+	}
 	head, _, _ := strings.Cut(body, "\n")
 	c := csv.NewReader(strings.NewReader(body))
 	c.FieldsPerRecord = -1
@@ -188,7 +191,7 @@ func planRow(cells []string, at map[string]int, known map[string]Monitor) Change
 		if err != nil {
 			return fail(bad(fmt.Sprintf("%s is %q", field, v), "a whole number", "correct it"))
 		}
-		note(field, strconv.Itoa(*into), v)
+		note(field, strconv.Itoa(*into), strconv.Itoa(n))
 		*into = n
 	}
 	figure := func(field string, was *float64) (*float64, error) {
@@ -200,6 +203,7 @@ func planRow(cells []string, at map[string]int, known map[string]Monitor) Change
 		if err != nil {
 			return nil, bad(fmt.Sprintf("%s is %q", field, v), "a number", "correct it")
 		}
+		f += 0 // a zero has no sign
 		before := "not stated"
 		if was != nil {
 			before = strconv.FormatFloat(*was, 'g', -1, 64)
@@ -215,7 +219,7 @@ func planRow(cells []string, at map[string]int, known map[string]Monitor) Change
 	if m.BacklightHours, err = figure("backlight_hours", m.BacklightHours); err != nil {
 		return fail(err)
 	}
-	if err := m.check(); err != nil {
+	if err := firstOf(errors.Join(m.check(), checkText("the room", c.room, false), checkText("the station", c.station, false))); err != nil {
 		return fail(err)
 	}
 	if c.station != "" && c.room == "" {
@@ -273,6 +277,9 @@ func (s *Store) Import(plan []Change) error {
 				m.StationID = &station
 			}
 			if _, err := saveRow(tx, "monitors", m.ID, monitorColumns, m.values()); err != nil {
+				if said := s.wrong(err); said != nil {
+					err = said
+				}
 				return fmt.Errorf("line %d: %w", c.Line, err)
 			}
 		}

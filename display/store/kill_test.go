@@ -2,6 +2,7 @@ package store
 
 import (
 	"bufio"
+	"errors"
 	"fmt"
 	"math/rand/v2"
 	"os"
@@ -16,13 +17,41 @@ import (
 	"evenstep/display/readings"
 )
 
-// TestMain lets the test program stand in for a bench that is killed: it adds readings one after the
-// other and prints the number of each once it is kept.
+// TestMain lets the test program stand in for another process: a bench that is killed, which adds readings
+// one after the other and prints the number of each once it is kept; one that looks and goes; one that
+// restores.
 func TestMain(m *testing.M) {
 	if path := os.Getenv("STORE_TEST_WRITER"); path != "" {
 		os.Exit(writeReadings(path))
 	}
+	if path := os.Getenv("STORE_TEST_READER"); path != "" {
+		os.Exit(readRooms(path))
+	}
+	if path := os.Getenv("STORE_TEST_RESTORER"); path != "" {
+		if _, err := Restore(os.Getenv("STORE_TEST_BACKUP"), path, noon); err != nil {
+			fmt.Println(err)
+			os.Exit(1)
+		}
+		os.Exit(0)
+	}
 	os.Exit(m.Run())
+}
+
+func readRooms(path string) int {
+	s, err := Open(path)
+	if err != nil {
+		fmt.Println(err)
+		return 1
+	}
+	rooms, err := s.Rooms()
+	if err = errors.Join(err, s.Close()); err != nil {
+		fmt.Println(err)
+		return 1
+	}
+	for _, r := range rooms {
+		fmt.Println(r.Name)
+	}
+	return 0
 }
 
 func writeReadings(path string) int {
@@ -52,7 +81,7 @@ func writeReadings(path string) int {
 func TestKilledInTheMiddle(t *testing.T) {
 	times := 200
 	if testing.Short() {
-		times = 12
+		times = 20
 	}
 	path := filepath.Join(t.TempDir(), "register.db")
 	s := must[*Store](t)(Open(path))

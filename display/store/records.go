@@ -8,6 +8,7 @@ import (
 	"runtime"
 	"strings"
 	"sync"
+	"time"
 
 	"evenstep/display/criteria"
 	"evenstep/display/record"
@@ -35,11 +36,15 @@ func insertRecord(tx *sql.Tx, monitor int64, r *record.Record, text []byte) (id 
 	if len(r.Persons) > 0 {
 		person = r.Persons[0].ID
 	}
+	at, err := time.Parse(time.RFC3339, r.Visit.Time)
+	if err != nil {
+		return 0, bad(fmt.Sprintf("the time of the visit is %q", r.Visit.Time), "RFC 3339, as 2026-11-30T09:15:00Z", "correct it")
+	}
 	a := r.Assessment
 	err = tx.QueryRow(`INSERT INTO records (sha256, monitor_id, serial, time, kind, person, scheme, class, verdict, max_deviation, luminance_max_cd_m2, luminance_min_cd_m2, text)
 		VALUES ($1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13) RETURNING id`,
-		r.SHA256, m, r.Monitor.Serial, r.Visit.Time, r.Visit.Kind, person, a.Scheme, a.Class, string(a.Verdict), a.MaxDeviation, a.LuminanceMax, a.LuminanceMin, text).Scan(&id)
-	return id, unique(err)
+		r.SHA256, m, r.Monitor.Serial, toSecond(at), r.Visit.Kind, person, a.Scheme, a.Class, string(a.Verdict), a.MaxDeviation, a.LuminanceMax, a.LuminanceMin, text).Scan(&id)
+	return id, err
 }
 
 // AddRecords keeps sealed records of monitors, all or none.
@@ -58,8 +63,9 @@ func (s *Store) AddRecords(ctx context.Context, monitors []int64, rs []*record.R
 // person, kind, verdict, scheme or time.
 type Search struct {
 	Words     string
-	MonitorID int64 // 0: all
-	Limit     int   // 0: all
+	MonitorID int64     // 0: all
+	From, To  time.Time // of the visit, To itself not; zero: open
+	Limit     int       // 0: all
 	Offset    int
 }
 
@@ -73,6 +79,15 @@ func (q Search) where() (string, []any) {
 	if q.MonitorID != 0 {
 		args = append(args, q.MonitorID)
 		parts = append(parts, fmt.Sprintf("x.monitor_id = $%d", len(args)))
+	}
+	for _, end := range []struct {
+		at   time.Time
+		sign string
+	}{{q.From, ">="}, {q.To, "<"}} {
+		if !end.at.IsZero() {
+			args = append(args, toSecond(end.at))
+			parts = append(parts, fmt.Sprintf("x.time %s $%d", end.sign, len(args)))
+		}
 	}
 	if len(parts) == 0 {
 		return "", nil
@@ -103,21 +118,21 @@ func (s *Store) Records(q Search) ([]Entry, error) {
 // CountRecords is how many records are wanted, whatever Limit says.
 func (s *Store) CountRecords(q Search) (n int, err error) {
 	where, args := q.where()
-	err = s.read.QueryRow("SELECT count(*)"+recordJoin+where, args...).Scan(&n)
+	err = s.reader().QueryRow("SELECT count(*)"+recordJoin+where, args...).Scan(&n)
 	return n, s.fault(err)
 }
 
 // Record returns a sealed record, verified, with its bytes.
 func (s *Store) Record(id int64) (*record.Record, []byte, error) {
 	var text []byte
-	err := s.read.QueryRow("SELECT text FROM records WHERE id = $1", id).Scan(&text)
+	err := s.reader().QueryRow("SELECT text FROM records WHERE id = $1", id).Scan(&text)
 	if errors.Is(err, sql.ErrNoRows) {
 		return nil, nil, fmt.Errorf("record %d %w", id, ErrNotFound)
 	}
 	if err != nil {
 		return nil, nil, s.fault(err)
 	}
-	r, err := record.Read(fmt.Sprintf("%s, record %d", s.path, id), text)
+	r, err := record.Read(fmt.Sprintf("%s, record %d", s.Path(), id), text)
 	return r, text, err
 }
 
@@ -147,7 +162,7 @@ func (s *Store) Rejudge(ctx context.Context, used *criteria.Used, report func(Re
 	if err != nil {
 		return err
 	}
-	rows, err := s.read.QueryContext(ctx, "SELECT id, text FROM records ORDER BY id")
+	rows, err := s.reader().QueryContext(ctx, "SELECT id, text FROM records ORDER BY id")
 	if err != nil {
 		return s.fault(err)
 	}

@@ -8,6 +8,8 @@ import (
 	"slices"
 	"strings"
 	"time"
+	"unicode"
+	"unicode/utf8"
 
 	"evenstep/display/photometry"
 	"evenstep/display/response"
@@ -113,6 +115,14 @@ func (m Meter) Noise() response.Noise {
 	return n
 }
 
+// factor is what readings are multiplied by; m may be nil.
+func (m *Meter) factor() photometry.CdM2 {
+	if m == nil || m.Factor <= 0 {
+		return 1
+	}
+	return photometry.CdM2(m.Factor)
+}
+
 // Person is someone who measures or reviews. The name lives apart from the id and may be erased.
 type Person struct {
 	ID   string
@@ -133,8 +143,8 @@ func checkText(what, s string, needed bool) error {
 		return bad(what+" is empty", "a text", "type it")
 	case len([]rune(s)) > longest:
 		return bad(fmt.Sprintf("%s has %d characters", what, len([]rune(s))), fmt.Sprintf("at most %d", longest), "shorten it")
-	case strings.ContainsAny(s, "\n\r\t\x00"):
-		return bad(what+" has a line break", "one line", "remove it")
+	case !utf8.ValidString(s) || strings.ContainsFunc(s, unicode.IsControl):
+		return bad(what+" has a line break or another sign that cannot be shown", "one line of text", "remove it")
 	}
 	return nil
 }
@@ -275,26 +285,16 @@ func saveRow(tx *sql.Tx, table string, id int64, columns []string, values []any)
 	}
 	if id == 0 {
 		err := tx.QueryRow(fmt.Sprintf("INSERT INTO %s (%s) VALUES (%s) RETURNING id", table, strings.Join(columns, ", "), strings.Join(marks, ", ")), values...).Scan(&id)
-		return id, unique(err)
+		return id, err
 	}
 	r, err := tx.Exec(fmt.Sprintf("UPDATE %s SET %s WHERE id = $%d", table, strings.Join(sets, ", "), len(columns)+1), append(values, id)...)
 	if err != nil {
-		return 0, unique(err)
+		return 0, err
 	}
 	if n, err := r.RowsAffected(); err != nil || n == 0 {
 		return 0, errors.Join(fmt.Errorf("%s %d %w", strings.TrimSuffix(table, "s"), id, ErrNotFound), err)
 	}
 	return id, nil
-}
-
-// unique puts a name that is taken in words.
-func unique(err error) error {
-	if err != nil && strings.Contains(err.Error(), "UNIQUE constraint failed: ") {
-		_, column, _ := strings.Cut(err.Error(), "UNIQUE constraint failed: ")
-		column, _, _ = strings.Cut(column, " ")
-		return bad(column+" is there already", "each once", "choose another, or change the one that is there")
-	}
-	return err
 }
 
 func firstOf(err error) error {
@@ -347,7 +347,7 @@ func (s *Store) Monitors() ([]Monitor, error) {
 
 // Monitor returns one monitor.
 func (s *Store) Monitor(id int64) (Monitor, error) {
-	m, err := scanMonitor(s.read.QueryRow(monitorSelect+"WHERE m.id = $1", id))
+	m, err := scanMonitor(s.reader().QueryRow(monitorSelect+"WHERE m.id = $1", id))
 	if errors.Is(err, sql.ErrNoRows) {
 		return m, fmt.Errorf("monitor %d %w", id, ErrNotFound)
 	}
@@ -376,7 +376,7 @@ func (s *Store) Persons() ([]Person, error) {
 
 // Site returns the site's name and the text of its own limits (see criteria.ParseSite).
 func (s *Store) Site() (name, limits string, err error) {
-	err = s.read.QueryRow("SELECT name, limits FROM site WHERE id = 1").Scan(&name, &limits)
+	err = s.reader().QueryRow("SELECT name, limits FROM site WHERE id = 1").Scan(&name, &limits)
 	return name, limits, s.fault(err)
 }
 
@@ -393,7 +393,7 @@ func (s *Store) SaveSite(name, limits string) error {
 
 // query reads all rows of a statement.
 func query[T any](s *Store, text string, scan func(*sql.Rows) (T, error), args ...any) ([]T, error) {
-	r, err := s.read.Query(text, args...)
+	r, err := s.reader().Query(text, args...)
 	if err != nil {
 		return nil, s.fault(err)
 	}
