@@ -70,6 +70,10 @@ func TestAnnexD1(t *testing.T) {
 			t.Errorf("P-value %d: %d; printed %v", p, got, w)
 		}
 	}
+	// The monitor is flat at the bottom, 0.305 to 0.310 cd/m2 over levels 0 to 26, and rises everywhere else.
+	if len(c.Warnings) != 1 || c.Warnings[0].Concern != Flat || c.Warnings[0].FromLevel != 0 || c.Warnings[0].ToLevel < 26 || c.Warnings[0].ToLevel > 34 {
+		t.Errorf("%v; expected one warning that levels 0 to about 26 are flat", c.Warnings)
+	}
 }
 
 // PS3.14 Annex D.2: the densities of a transmissive printer, L0 = 2000 and La = 10 cd/m2, densities 0.20 to

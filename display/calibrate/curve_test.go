@@ -305,3 +305,52 @@ func TestManyLevels(t *testing.T) {
 		t.Errorf("%.2f JND off; expected 0.6 at most, of readings that are 0.7 JND off each", w)
 	}
 }
+
+// Readings of any kind end in a table that never falls, or in a refusal of one line.
+func TestGarbage(t *testing.T) {
+	tables := 0
+	for i := range 150 {
+		rng := source(uint64(3000 + i))
+		bits := 3 + rng.IntN(12)
+		top := 1<<bits - 1
+		noise := response.Noise{
+			Repeatability: []float64{0, 1e-6, 0.005, 0.2}[rng.IntN(4)],
+			Floor:         photometry.CdM2([]float64{0, 0.005, 1}[rng.IntN(3)]),
+			Resolution:    photometry.CdM2([]float64{0, 0.1}[rng.IntN(2)]),
+		}
+		seen := map[int]bool{0: true, top: true}
+		for range rng.IntN(25) {
+			seen[rng.IntN(top+1)] = true
+		}
+		in := Input{Bits: bits, Noise: noise, Light: response.DarkRoom()}
+		for l := range seen {
+			v := math.Pow(float64(l)/float64(top), uniform(rng, 0, 3)) * math.Pow(10, uniform(rng, -3, 4))
+			in.Readings = append(in.Readings, readings.Reading{Level: l, Luminance: photometry.CdM2(v), Role: readings.Series, Ambient: readings.Excluded})
+		}
+		slices.SortFunc(in.Readings, func(a, b readings.Reading) int { return a.Level - b.Level })
+		c, err := NewCurve(in)
+		var res Result
+		if err == nil {
+			res, err = c.Table(Aim{Min: cd(0.2), Max: cd(50)}, 8, 8+rng.IntN(9))
+		}
+		if err != nil {
+			if strings.Contains(err.Error(), "\n") {
+				t.Errorf("%q is more than one line", err)
+			}
+			continue
+		}
+		tables++
+		rising(t, res.Table.Entries)
+		for _, w := range c.Warnings {
+			if w.Text == "" || strings.Contains(w.Text, "\n") || w.ToLevel > top {
+				t.Errorf("%+v", w)
+			}
+		}
+		if p, err := c.Predict(res.Table, Path{}); err == nil && !(p.GreatestInterval[0] <= p.Greatest && p.Greatest <= p.GreatestInterval[1]) {
+			t.Errorf("%v outside %v", p.Greatest, p.GreatestInterval)
+		}
+	}
+	if tables < 10 {
+		t.Errorf("%d tables; expected enough of them for the test to mean something", tables)
+	}
+}

@@ -61,7 +61,7 @@ func thinned(samples []sample) []sample {
 // explain fits all shapes to the samples.
 func explain(weigh []sample) mixture {
 	plain := plainLaw(weigh)
-	m := guesses(newLevel(weigh), shapes, weigh, 1)
+	m := guesses(newSlope(weigh), shapes, weigh, 1)
 	m = append(m, guesses(plain, shapes, weigh, 1)...)
 	for i := 2; i < len(weigh) && weigh[i-1].x < footsEnd; i++ {
 		footed := plain.withFoot(weigh[i-1].x, weigh[i].x).settle(weigh)
@@ -88,11 +88,7 @@ func (m mixture) evidence() float64 {
 
 // guesses fits shapes over one trend. The prior is the likelihood given beforehand, against a plain trend.
 func guesses(t trend, shapes []shape, samples []sample, prior float64) mixture {
-	xs := make([]float64, len(samples))
-	for i, p := range samples {
-		xs[i] = p.x
-	}
-	at := place(t, xs)
+	at := t.place(places(samples))
 	rest := make([]float64, len(samples))
 	for i, p := range samples {
 		rest[i] = p.y - at.values[i]
@@ -142,7 +138,7 @@ func (m mixture) curve(xs []float64) (mean, variance []float64) {
 	for _, f := range m {
 		at, ok := trends[f.trend]
 		if !ok {
-			at = place(f.trend, xs)
+			at = f.trend.place(xs)
 			trends[f.trend] = at
 		}
 		s := f.spread(at)
@@ -165,7 +161,7 @@ func (m mixture) covariance(xs []float64) *mat.SymDense {
 	at := make([]placed, len(m))
 	means := make([][]float64, len(m))
 	for k, f := range m {
-		at[k] = place(f.trend, xs)
+		at[k] = f.trend.place(xs)
 		means[k] = f.mean(at[k])
 		for i, v := range means[k] {
 			mid[i] += f.weight * v

@@ -3,6 +3,9 @@ package calibrate
 import (
 	"math"
 
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
 	"gonum.org/v1/gonum/mat"
 )
 
@@ -25,7 +28,7 @@ type shape struct {
 // shapes are the guesses that are laid over a plain trend. Their likelihoods decide between them.
 var shapes = grid([]float64{0.03, 0.2, 2}, []int{3, 5}, []float64{0.1, 0.22, 0.5, 1.2}, []float64{1.5, 4, 12, 40, 130})
 
-// footShapes are the guesses laid over a power law that has a foot: the foot explains the dark end already.
+// footShapes are the guesses laid over a power law with a foot or in pieces: those explain the kinks already.
 var footShapes = grid([]float64{0.2}, []int{5}, []float64{0.3, 0.7}, []float64{1.5, 4, 12})
 
 func grid(bends []float64, roughs []int, lengths, sizes []float64) []shape {
@@ -59,13 +62,13 @@ func (s shape) kernel(d float64) float64 {
 // fitted is one shape over one trend, with what the samples say of it.
 type fitted struct {
 	shape
-	trend
-	weight float64     // share of the likelihood
-	logP   float64     // logarithm of the likelihood, but for a constant
-	warped []float64   // of the samples
-	moves  [][]float64 // of the samples
-	chol   mat.Cholesky
-	alpha  []float64
+	trend  trend
+	weight float64           // share of the likelihood
+	logP   float64           // logarithm of the likelihood, but for a constant
+	warped []float64         // places of the samples
+	moves  [][]float64       // of the trend at the samples
+	root   blas64.Triangular // of the samples' covariance, upper
+	alpha  []float64         // covariance of the samples, inverted, times how far they lie above the trend
 }
 
 // observe fits a shape to samples that lie rest above the trend, at places where the trend moves by
@@ -76,26 +79,24 @@ func observe(s shape, t trend, samples []sample, rest []float64, moves [][]float
 	for i, p := range samples {
 		f.warped[i] = s.warp(p.x)
 	}
-	k := mat.NewSymDense(n, nil)
+	k := blas64.Symmetric{N: n, Stride: n, Data: make([]float64, n*n), Uplo: blas.Upper}
 	for i := range n {
 		for j := i; j < n; j++ {
-			v := f.kernel(f.warped[i]-f.warped[j]) + dot(moves[i], moves[j])
-			if i == j {
-				v += samples[i].variance
-			}
-			k.SetSym(i, j, v)
+			k.Data[i*n+j] = f.kernel(f.warped[i]-f.warped[j]) + dot(moves[i], moves[j])
 		}
+		k.Data[i*n+i] += samples[i].variance
 	}
-	if !f.chol.Factorize(k) {
+	var ok bool
+	if f.root, ok = lapack64.Potrf(k); !ok {
 		return nil, false
 	}
-	var a mat.VecDense
-	if err := f.chol.SolveVecTo(&a, mat.NewVecDense(n, rest)); err != nil {
-		return nil, false
+	f.alpha = append([]float64(nil), rest...)
+	lapack64.Potrs(f.root, blas64.General{Rows: n, Cols: 1, Stride: 1, Data: f.alpha})
+	f.logP = -dot(rest, f.alpha) / 2
+	for i := range n {
+		f.logP -= math.Log(f.root.Data[i*n+i])
 	}
-	f.alpha = a.RawVector().Data
-	f.logP = -(dot(rest, f.alpha) + f.chol.LogDet()) / 2
-	return f, true
+	return f, !math.IsNaN(f.logP)
 }
 
 // cross is the covariance of the curve at x with each sample.
@@ -117,35 +118,25 @@ func (f *fitted) mean(at placed) []float64 {
 	return out
 }
 
-// half is the part of the covariance that the samples took away, as a root: its columns belong to the
-// places, and the sums of their products are what was taken.
-func (f *fitted) half(at placed) *mat.Dense {
+// half is the part of the covariance that the samples took away, as a root: its rows belong to the places,
+// and the products of two rows are what was taken.
+func (f *fitted) half(at placed) blas64.General {
 	n := len(f.warped)
-	c := mat.NewDense(n, len(at.xs), nil)
-	column := make([]float64, n)
+	c := blas64.General{Rows: len(at.xs), Cols: n, Stride: n, Data: make([]float64, len(at.xs)*n)}
 	for j, x := range at.xs {
-		f.cross(x, at.moves[j], column)
-		c.SetCol(j, column)
+		f.cross(x, at.moves[j], c.Data[j*n:(j+1)*n])
 	}
-	var lower mat.TriDense
-	f.chol.LTo(&lower)
-	var half mat.Dense
-	// A factor that came out of Factorize has no zero on its diagonal; a poor condition only costs digits.
-	_ = half.Solve(&lower, c)
-	return &half
+	blas64.Trsm(blas.Right, blas.NoTrans, 1, f.root, c)
+	return c
 }
 
 // spread is the variance of the curve at each place, in JND squared.
 func (f *fitted) spread(at placed) []float64 {
 	half := f.half(at)
-	rows, _ := half.Dims()
 	out := make([]float64, len(at.xs))
 	for j := range out {
-		v := f.size*f.size + dot(at.moves[j], at.moves[j])
-		for i := range rows {
-			v -= half.At(i, j) * half.At(i, j)
-		}
-		out[j] = max(0, v)
+		row := half.Data[j*half.Stride : (j+1)*half.Stride]
+		out[j] = max(0, f.size*f.size+dot(at.moves[j], at.moves[j])-dot(row, row))
 	}
 	return out
 }
@@ -154,7 +145,8 @@ func (f *fitted) spread(at placed) []float64 {
 func (f *fitted) covariance(at placed) *mat.SymDense {
 	n := len(at.xs)
 	out := mat.NewSymDense(n, nil)
-	out.SymOuterK(-1, f.half(at).T())
+	half := f.half(at)
+	blas64.Syrk(blas.NoTrans, -1, half, 0, out.RawSymmetric())
 	for i := range n {
 		for j := i; j < n; j++ {
 			v := f.kernel(f.warp(at.xs[i])-f.warp(at.xs[j])) + dot(at.moves[i], at.moves[j])

@@ -133,7 +133,7 @@ func TestStudyFamilies(t *testing.T) {
 	if testing.Short() {
 		t.Skip("a study")
 	}
-	const panels = 100
+	const panels = 60
 	const goal, limit = 0.04, 0.045
 	var text strings.Builder
 	fmt.Fprintf(&text, "true greatest contrast deviation in %%, %d panels a family, 18 levels, 20 readings of 0.5 %% noise, 10 bits out\n", panels)
@@ -190,13 +190,14 @@ func TestStudyPlan(t *testing.T) {
 	if testing.Short() {
 		t.Skip("a study")
 	}
-	const panels, most = 20, 38
+	const panels, most = 16, 38
+	const alike = 1.05 // medians of so few panels differ by that
 	series := []struct {
 		name   string
 		levels []int
 	}{{"even 18", even(18)}, {"dark 20", dark(20)}, {"dark 32", dark(32)}}
 	var text strings.Builder
-	fmt.Fprintf(&text, "median true greatest deviation in %%, %d panels a family, and the readings that the plan needs for no more than that\n", panels)
+	fmt.Fprintf(&text, "median true greatest deviation in %%, %d panels a family, and the readings that the plan needs for no more than 1.05 of that\n", panels)
 	fmt.Fprintf(&text, "%-18s", "family")
 	for _, s := range series {
 		fmt.Fprintf(&text, " %16s", s.name)
@@ -227,7 +228,7 @@ func TestStudyPlan(t *testing.T) {
 				want := quantile(column(fixed, func(v [3]float64) float64 { return v[k] }), 0.5)
 				need := fmt.Sprint(">", counts[len(counts)-1])
 				for c, n := range counts {
-					if quantile(column(by, func(v []float64) float64 { return v[c] }), 0.5) <= want {
+					if quantile(column(by, func(v []float64) float64 { return v[c] }), 0.5) <= want*alike {
 						need = fmt.Sprint(n)
 						break
 					}

@@ -3,41 +3,39 @@ package calibrate
 import (
 	"math"
 
-	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
 )
 
-// trend is the curve that the smooth part of a fit is laid over: its value in JND, and the directions in
-// which it may still move, each scaled to the standard deviation that it is given beforehand.
+// trend is the curve that the smooth part of a fit is laid over.
 type trend interface {
-	value(x float64) float64
-	directions(x float64) []float64
+	place(xs []float64) placed
 }
 
-// placed is a trend at some places.
+// placed is a trend at some places: its values in JND, and the directions in which it may still move there,
+// each scaled to the standard deviation that it is given beforehand.
 type placed struct {
 	xs, values []float64
 	moves      [][]float64
 }
 
-func place(t trend, xs []float64) placed {
+// slope is the plainest trend: a straight line, free to move up and down and to tilt.
+type slope struct{ middle, rise float64 }
+
+func newSlope(samples []sample) slope {
+	first, last := samples[0].y, samples[len(samples)-1].y
+	return slope{middle: (first + last) / 2, rise: math.Abs(last-first) + 1}
+}
+
+func (s slope) place(xs []float64) placed {
 	p := placed{xs: xs, values: make([]float64, len(xs)), moves: make([][]float64, len(xs))}
 	for i, x := range xs {
-		p.values[i] = t.value(x)
-		p.moves[i] = t.directions(x)
+		p.values[i] = s.middle + s.rise*(x-0.5)
+		p.moves[i] = []float64{s.rise, s.rise * (x - 0.5)}
 	}
 	return p
 }
-
-// level is the plainest trend: one index all over, free to move up and down and to tilt.
-type level struct{ middle, rise float64 }
-
-func newLevel(samples []sample) level {
-	first, last := samples[0].y, samples[len(samples)-1].y
-	return level{middle: (first + last) / 2, rise: math.Abs(last-first) + 1}
-}
-
-func (l level) value(x float64) float64        { return l.middle + l.rise*(x-0.5) }
-func (l level) directions(x float64) []float64 { return []float64{l.rise, l.rise * (x - 0.5)} }
 
 // law is a power law of luminance, black + (white - black) x^exponent. With a foot, luminance runs straight
 // from black to the law, which then need not lead to black itself. With pieces, it is what a table in the
@@ -75,38 +73,54 @@ func (c law) free() int {
 	return 3
 }
 
-func (c law) luminance(x float64) float64 {
-	black, white, exponent := math.Exp(c.constants[0]), math.Exp(c.constants[1]), math.Exp(c.constants[2])
-	switch {
-	case c.pieces > 0:
-		n := float64(c.pieces)
-		from := math.Floor(min(x*n, n-1))
-		a, b := math.Pow(from/n, exponent), math.Pow((from+1)/n, exponent)
-		return black + (white-black)*(a+(b-a)*(x*n-from))
-	case !c.foot:
-		return black + (white-black)*math.Pow(x, exponent)
-	}
-	start := black * math.Exp(c.constants[3])
-	foot := math.Exp(c.constants[4])
-	if x >= foot {
-		return start + (white-start)*math.Pow(x, exponent)
-	}
-	knee := start + (white-start)*math.Pow(foot, exponent)
-	return black + (knee-black)*x/foot
+// worked is a law with its constants worked out.
+type worked struct {
+	black, white, exponent, start, foot, knee float64
+	pieces                                    float64
 }
 
-func (c law) value(x float64) float64 { return indexOf(c.luminance(x)) }
-
-func (c law) directions(x float64) []float64 {
-	out := make([]float64, c.free())
-	const h = 1e-4 // the law bends over changes of about 1
-	for i := range out {
-		up, down := c, c
-		up.constants[i] += h
-		down.constants[i] -= h
-		out[i] = c.spread[i] * (up.value(x) - down.value(x)) / (2 * h)
+func (c law) work() worked {
+	w := worked{black: math.Exp(c.constants[0]), white: math.Exp(c.constants[1]), exponent: math.Exp(c.constants[2]), pieces: float64(c.pieces)}
+	w.start = w.black
+	if c.foot {
+		w.start *= math.Exp(c.constants[3])
+		w.foot = math.Exp(c.constants[4])
+		w.knee = w.start + (w.white-w.start)*math.Pow(w.foot, w.exponent)
 	}
-	return out
+	return w
+}
+
+// index is the index of the luminance at x.
+func (w worked) index(x float64) float64 {
+	switch {
+	case w.pieces > 0:
+		from := math.Floor(min(x*w.pieces, w.pieces-1))
+		a, b := math.Pow(from/w.pieces, w.exponent), math.Pow((from+1)/w.pieces, w.exponent)
+		return indexOf(w.black + (w.white-w.black)*(a+(b-a)*(x*w.pieces-from)))
+	case x < w.foot:
+		return indexOf(w.black + (w.knee-w.black)*x/w.foot)
+	}
+	return indexOf(w.start + (w.white-w.start)*math.Pow(x, w.exponent))
+}
+
+func (c law) place(xs []float64) placed {
+	p := placed{xs: xs, values: make([]float64, len(xs)), moves: make([][]float64, len(xs))}
+	here := c.work()
+	for i, x := range xs {
+		p.values[i] = here.index(x)
+		p.moves[i] = make([]float64, c.free())
+	}
+	const h = 1e-4 // the law bends over changes of about 1
+	for k := range c.free() {
+		up, down := c, c
+		up.constants[k] += h
+		down.constants[k] -= h
+		above, below := up.work(), down.work()
+		for i, x := range xs {
+			p.moves[i][k] = c.spread[k] * (above.index(x) - below.index(x)) / (2 * h)
+		}
+	}
+	return p
 }
 
 // plainLaw is the power law without a foot that misses the samples least.
@@ -128,9 +142,10 @@ func plainLaw(samples []sample) law {
 const slack = 4
 
 func (c law) misfit(samples []sample) float64 {
+	here := c.work()
 	sum := 0.0
 	for _, p := range samples {
-		d := p.y - c.value(p.x)
+		d := p.y - here.index(p.x)
 		sum += d * d / (p.variance + slack)
 	}
 	return sum
@@ -155,32 +170,37 @@ func (c law) settle(samples []sample) law {
 
 func (c law) towards(samples []sample) (law, bool) {
 	n := c.free()
-	a := mat.NewSymDense(n, nil)
-	b := mat.NewVecDense(n, nil)
-	for _, p := range samples {
-		m := c.directions(p.x)
+	a := blas64.Symmetric{N: n, Stride: n, Data: make([]float64, n*n), Uplo: blas.Upper}
+	step := make([]float64, n)
+	at := c.place(places(samples))
+	for s, p := range samples {
 		w := 1 / (p.variance + slack)
-		d := p.y - c.value(p.x)
-		for i := range m {
-			b.SetVec(i, b.AtVec(i)+w*m[i]*d)
+		d := p.y - at.values[s]
+		for i, m := range at.moves[s] {
+			step[i] += w * m * d
 			for j := i; j < n; j++ {
-				a.SetSym(i, j, a.At(i, j)+w*m[i]*m[j])
+				a.Data[i*n+j] += w * m * at.moves[s][j]
 			}
 		}
 	}
 	for i := range n {
-		a.SetSym(i, i, a.At(i, i)*1.01+1e-3)
+		a.Data[i*n+i] = a.Data[i*n+i]*1.01 + 1e-3
 	}
-	var chol mat.Cholesky
-	if !chol.Factorize(a) {
+	root, ok := lapack64.Potrf(a)
+	if !ok {
 		return c, false
 	}
-	var step mat.VecDense
-	if err := chol.SolveVecTo(&step, b); err != nil {
-		return c, false
-	}
-	for i := range n {
-		c.constants[i] += c.spread[i] * step.AtVec(i)
+	lapack64.Potrs(root, blas64.General{Rows: n, Cols: 1, Stride: 1, Data: step})
+	for i, v := range step {
+		c.constants[i] += c.spread[i] * v
 	}
 	return c, true
+}
+
+func places(samples []sample) []float64 {
+	xs := make([]float64, len(samples))
+	for i, p := range samples {
+		xs[i] = p.x
+	}
+	return xs
 }
