@@ -12,6 +12,7 @@ import (
 
 func main() {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	context.AfterFunc(ctx, stop) // a second signal ends a program that waits for its input
 	p := program{
 		in:     os.Stdin,
 		out:    os.Stdout,

@@ -88,8 +88,19 @@ func contrastFigure(r *response.Response) figure {
 	}
 	if n := len(at.Points); n < provisionalBelow {
 		f.provisional = fmt.Sprintf("%d levels; the limit was made for %d", n, provisionalBelow)
+	} else if gap := widestGap(at); gap > 1.5/(provisionalBelow-1) {
+		f.provisional = fmt.Sprintf("a gap of %.0f %% of the range lies between two levels; the limit was made for %d even ones", 100*gap, provisionalBelow)
 	}
 	return f
+}
+
+// widestGap is the greatest distance between neighbouring levels, as a share of the range.
+func widestGap(r *response.Response) float64 {
+	gap := 0
+	for i := 1; i < len(r.Points); i++ {
+		gap = max(gap, r.Points[i].Level-r.Points[i-1].Level)
+	}
+	return float64(gap) / float64(int(1)<<r.Bits-1)
 }
 
 // luminanceFigure is L'max, L'min or the ratio on the basis that the limit speaks of.
